@@ -1,0 +1,1 @@
+"""Which points, in which blocks, what is left to do: running a sweep into a map."""
