@@ -111,7 +111,9 @@ def _array(array: WireSet, eps_host: complex, frequency: float, k0) -> dense.Wir
     if formula == "lattice":
         kp = lattice.kp_lattice(p, q, array.radius)
     elif formula in ("logarithmic", "gap"):
-        kp = {"logarithmic": lattice.kp_logarithmic, "gap": lattice.kp_gap}[formula](mp.sqrt(mp.mpf(p) * q), array.radius)
+        kp = {"logarithmic": lattice.kp_logarithmic, "gap": lattice.kp_gap}[formula](
+            mp.sqrt(mp.mpf(p) * q), array.radius
+        )
     else:
         kp = 2 * mp.pi * mp.mpf(formula) * mp.sqrt(eps_host.real) / C0
     zeta = 0
