@@ -182,7 +182,9 @@ def _bands_of(line: Line, polarization: Polarization, frequencies: np.ndarray, l
         edges = _crossings(line, f, power, absolute)
         skirts = _crossings(line, f, power, skirt)
         measured = (_measure(f, power, first, last, edges, skirts) for first, last in runs)
-        bands = [band for band in measured if band.width > EDGE_TOLERANCE * band.upper or band.cut_below or band.cut_above]
+        bands = [
+            band for band in measured if band.width > EDGE_TOLERANCE * band.upper or band.cut_below or band.cut_above
+        ]
     return BandList(polarization, line.angle_deg, line.quantity, absolute, skirt, peak, tuple(bands))
 
 

@@ -24,6 +24,8 @@ _WINDOW = 24  # samples per rational function; neighbours overlap by half
 _AROUND = np.array([-30, -10, -4, -2, -1.2, -0.8, -0.4, 0, 0.4, 0.8, 1.2, 2, 4, 10, 30])  # in half widths
 _STRAIGHT = 5e-3  # largest distance of a midpoint from the straight line, of the spectrum's peak
 _FINEST = 1e-13  # relative step below which nothing is halved
+_MOST = 200_000  # samples at which halving ends: lossless local wires have endless resonances at their plasma edge
+_OPAQUE = 1e-150  # amplitude below which there is nothing to see
 
 
 @dataclass(frozen=True)
@@ -78,7 +80,7 @@ def fine_spectrum(line: Line, frequencies: np.ndarray) -> tuple[np.ndarray, np.n
     if f.size < 2:
         return f, power
     fresh = np.ones(f.size - 1, dtype=bool)  # intervals not looked at yet
-    while np.any(fresh):
+    while np.any(fresh) and f.size < _MOST:
         where = np.flatnonzero(fresh & (np.diff(f) > _FINEST * f[1:]))
         middle = 0.5 * (f[where] + f[where + 1])
         value = line.power(middle)
@@ -97,7 +99,7 @@ def hidden_poles(line: Line, frequencies: np.ndarray) -> np.ndarray:
     Only poles nearer to the real axis than twice the step around them; real part inside the grid.
     """
     amplitude = line.amplitude(frequencies)
-    good = np.isfinite(amplitude)
+    good = np.isfinite(amplitude) & (abs(amplitude) > _OPAQUE)
     f, amplitude = frequencies[good], amplitude[good]
     found = [np.zeros(0, dtype=complex)]
     for start in range(0, max(f.size - _WINDOW // 2, 1), _WINDOW // 2):
@@ -113,7 +115,7 @@ def _poles(f: np.ndarray, amplitude: np.ndarray) -> np.ndarray:
     middle, half = 0.5 * (f[0] + f[-1]), 0.5 * (f[-1] - f[0])
     with warnings.catch_warnings():
         warnings.simplefilter("ignore", RuntimeWarning)  # noise-level samples: no convergence, nothing to find
-        poles = AAA((f - middle) / half, amplitude, rtol=1e-12, max_terms=f.size // 2).poles()
+        poles = AAA((f - middle) / half, amplitude / abs(amplitude).max(), rtol=1e-12, max_terms=f.size // 2).poles()
     poles = middle + half * poles
     poles = poles[(poles.real > f[0]) & (poles.real < f[-1])]
     step = np.diff(f)[np.clip(np.searchsorted(f, poles.real) - 1, 0, f.size - 2)]

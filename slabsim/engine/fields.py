@@ -12,6 +12,8 @@ the run as a covector, picks the true state out of the plane.
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 
 from slabsim.engine import kernels as k
@@ -130,13 +132,13 @@ class _Run:
         return np.real(e * np.conj(h) + psi * np.conj(v))
 
 
-def _transfer(work: np.ndarray, h, v, e, psi) -> tuple[np.ndarray, ...]:
+def _transfer(work: np.ndarray, h: Any, v: Any, e: Any, psi: Any) -> tuple[np.ndarray, ...]:
     """Scaled transfer of a wire layer, back to front: `kernels` states its functions."""
     eps, inv_eps = _complex(work, k.EPS, k.INV_EPS)
     c = work[k.KP] * np.sqrt(work[k.S2])
     half, xc, yc, xg, yg, xw, yw = _complex(work, k.DA, k.XC, k.YC, k.XG, k.YG, k.XW, k.YWW)
 
-    def apply(mean, difference, first, second):
+    def apply(mean: Any, difference: Any, first: Any, second: Any) -> tuple[Any, Any]:
         tilt = half * difference
         return (mean + tilt) * first + c * difference * second, (mean - tilt) * second + c * difference * first
 
@@ -146,6 +148,6 @@ def _transfer(work: np.ndarray, h, v, e, psi) -> tuple[np.ndarray, ...]:
     return *to_u, from_u[0] + from_y[0], from_u[1] + from_y[1]
 
 
-def _complex(work: np.ndarray, *rows: int):
+def _complex(work: np.ndarray, *rows: int) -> Any:
     values = tuple(work[row] + 1j * work[row + 1] for row in rows)
     return values if len(values) > 1 else values[0]

@@ -491,7 +491,7 @@ def _element(w, n, kind, te, tm):
                 _wire_run(w, n)
     if te:
         _normalise_te(w, n)
-    if tm and (kind == WIRE_RUN or kind == WIRE_JOINT or kind == WIRE_BACK):
+    if tm and kind in (WIRE_BACK, WIRE_RUN, WIRE_JOINT):
         _normalise_run(w, n)
     elif tm:
         _normalise_tm(w, n)

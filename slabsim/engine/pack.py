@@ -100,6 +100,16 @@ def wire_constants(layer: Layer, wires: WireSet, frequencies: np.ndarray) -> tup
     return kp, internal_impedance(wires.radius, metal, frequencies, host) * area / ETA0
 
 
+def local_permittivity(layer: Layer, wires: WireSet, frequencies: np.ndarray) -> np.ndarray:
+    """Permittivity along the wires in the local model, eps + i/(k0 xi), complex array of shape (n_freqs,).
+
+    Zero at the plasma edge; where the wires are inductive by themselves that lies below the edge given by kp alone.
+    """
+    k0 = TWO_PI * frequencies / C0
+    kp, zeta = wire_constants(layer, wires, frequencies)
+    return layer.material.permittivity(frequencies) + 1j / (k0 * (zeta - 1j * k0 / kp**2))
+
+
 def load_impedance(load: SeriesLoad, frequencies: np.ndarray) -> np.ndarray:
     """Impedance [ohm] of a series load; time factor exp(-i w t), so an inductance is -i w L."""
     w = TWO_PI * frequencies
@@ -158,8 +168,7 @@ class _Packer:
 
         def fill(table: np.ndarray) -> None:
             eps, _ = self._medium(table, layer)
-            kp, zeta = wire_constants(layer, wires, self.frequencies)
-            eps_zz = eps + 1j / (self.k0 * (zeta - 1j * self.k0 / kp**2))
+            eps_zz = local_permittivity(layer, wires, self.frequencies)
             with np.errstate(divide="ignore", invalid="ignore"):  # at a lossless plasma edge: NaN points
                 _set(table, k.STRETCH, 1.0 - eps / eps_zz)
 

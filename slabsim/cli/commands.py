@@ -1,0 +1,225 @@
+"""The commands. Each reads its arguments, calls `slabsim.api`, and shows what comes back."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any
+
+import typer
+
+if TYPE_CHECKING:
+    from slabsim.stack.sample import Stack
+
+app = typer.Typer(
+    name="slabsim",
+    help="Reflection, transmission and absorption of slabs of thin parallel wires.",
+    epilog="Not a safety rating: for protection rely on standards, certified measurements and licensed practice.",
+    add_completion=False,
+    no_args_is_help=True,
+    pretty_exceptions_enable=False,
+    context_settings={"help_option_names": ["-h", "--help"]},
+)
+
+StackFile = Annotated[Path, typer.Argument(metavar="STACK", help="Stack file (TOML).")]
+Source = Annotated[Path, typer.Argument(metavar="SOURCE", help="Stack file (TOML) or map (HDF5).")]
+LevelText = Annotated[
+    str, typer.Option("--level", help='Band level: "0.5", "-3 dB", "0.5 of peak" or "-3 dB of peak".')
+]
+Angles = Annotated[
+    list[float] | None, typer.Option("--angle", help="Angle in degrees; may be given again. Default: up to ten.")
+]
+Replace = Annotated[bool, typer.Option("--replace", help="Replace an existing map.")]
+_MOST_ANGLES = 10
+
+
+def _version(wanted: bool) -> None:
+    if wanted:
+        from slabsim import __version__
+
+        typer.echo(f"slabsim {__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _options(
+    version: Annotated[
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Print the version.")
+    ] = False,
+) -> None:
+    """Reflection, transmission and absorption of slabs of thin parallel wires."""
+
+
+@app.command()
+def sweep(
+    stack: StackFile,
+    output: Annotated[
+        Path | None, typer.Option("--output", "-o", help="Map to write. Default: STACK's name.h5.")
+    ] = None,
+    resume: Annotated[bool, typer.Option("--resume", help="Go on with an unfinished map.")] = False,
+    replace: Replace = False,
+    compress: Annotated[bool, typer.Option("--compress", help="Smaller and much slower.")] = False,
+) -> None:
+    """Compute a stack over its frequencies and angles into a map file."""
+    from time import perf_counter
+
+    from slabsim.cli.progress import bar
+    from slabsim.stack.reader import read_stack
+    from slabsim.sweeps.run import run_sweep
+
+    sample = read_stack(stack)
+    target = output or Path(stack.stem + ".h5")
+    start = perf_counter()
+    report = run_sweep(sample, target, resume=resume, replace=replace, compress=compress, progress=bar())
+    typer.echo(str(report))
+    if report.n_computed:
+        points = f"{report.n_points:,} points by {len(sample.sweep.polarizations)} polarizations"
+        typer.echo(f"{points}, {sample.sweep.model} model, {perf_counter() - start:.1f} s")
+    if not report.is_complete:
+        raise typer.Exit(1)
+
+
+@app.command()
+def passbands(
+    source: Source,
+    level: LevelText = "0.5 of peak",
+    quantity: Annotated[str | None, typer.Option(help="T, R or A. Default: T, or A on a metal back.")] = None,
+    angle: Angles = None,
+    model: Annotated[str | None, typer.Option(help="nonlocal or local. Default: that of the source.")] = None,
+    csv: Annotated[Path | None, typer.Option(help="Also write the bands to this file, in SI units.")] = None,
+) -> None:
+    """Print every pass band per polarization and angle, and how its edges shift with angle."""
+    from slabsim import api
+    from slabsim.report import tables
+
+    sample = api.load_stack(source)
+    chosen = angle or _some_angles(sample)
+    lists = api.find_bands(sample, sorted(chosen), api.read_level(level), _quantity(quantity), _model(model))
+    unit = sample.sweep.spectral_unit
+    typer.echo(f"{sample.title or sample.file_name}: {model or sample.sweep.model} model, level {level}")
+    tables.show(tables.band_table(lists, unit))
+    tracks = [
+        (polarization, track)
+        for polarization in sample.sweep.polarizations
+        for track in api.follow_bands([found for found in lists if found.polarization == polarization])
+        if len(track.bands) > 1
+    ]
+    if tracks:
+        tables.show(tables.shift_table(tracks, unit))
+    if angle is None and len(chosen) < sample.sweep.angles_deg.size:
+        typer.echo(f"{len(chosen)} of the {sample.sweep.angles_deg.size} angles of the sweep; others with --angle")
+    if csv:
+        _write(csv, tables.bands_as_csv(lists))
+
+
+@app.command()
+def compare(
+    source: Source,
+    tolerance: Annotated[float, typer.Option(help="Largest difference of power that counts as agreement.")] = 0.01,
+    level: LevelText = "0.5 of peak",
+    angle: Angles = None,
+    output: Annotated[
+        Path | None, typer.Option("--output", "-o", help="Map that takes the differences. Default: see below.")
+    ] = None,
+    figure: Annotated[Path | None, typer.Option(help="Figure of the differences, .png, .svg or .pdf.")] = None,
+    replace: Replace = False,
+) -> None:
+    """Run the local and the nonlocal model of the wires, and say whether the local one can be trusted.
+
+    The differences go into the map if SOURCE is one, else into a new map, STACK's name_compare.h5; the figure has the
+    map's name and .png unless --figure names it.
+    """
+    from slabsim import api
+    from slabsim.report import tables
+
+    sample = api.load_stack(source)
+    chosen = sorted(angle or _some_angles(sample))
+    if output is None:
+        output = source if api.is_map(source) else Path(source.stem + "_compare.h5")
+    if not (api.is_map(source) and output == source):
+        api.sweep(sample, output, replace=replace)
+    comparison = api.compare_models(sample, tolerance=tolerance, angles_deg=chosen, level=api.read_level(level))
+    api.store_comparison(comparison, output)
+    typer.echo(f"{sample.title or sample.file_name}: level {level}")
+    tables.show(tables.comparison_tables(comparison, sample.sweep.spectral_unit))
+    figure = figure or output.with_suffix(".png")
+    try:
+        api.draw_comparison(comparison, sample, figure)
+        typer.echo(f"differences in {output} (/entry/comparison) and {figure}")
+    except api.SlabsimError as error:
+        typer.echo(f"differences in {output} (/entry/comparison); no figure: {error}")
+
+
+@app.command()
+def describe(source: Source) -> None:
+    """Print what was read, with derived numbers: plasma frequency by every formula, skin depth, wire loss."""
+    from slabsim import api
+    from slabsim.report import tables
+
+    sample = api.load_stack(source)
+    tables.show(tables.description_tables(api.describe_stack(sample), sample.sweep.spectral_unit))
+
+
+@app.command()
+def plot(
+    map_file: Annotated[Path, typer.Argument(metavar="MAP", help="Map (HDF5).")],
+    output: Annotated[
+        Path | None, typer.Option("--output", "-o", help="Figure, .png, .svg or .pdf. Default: MAP's name.png.")
+    ] = None,
+    quantity: Annotated[str | None, typer.Option(help="T, R or A. Default: T, or A on a metal back.")] = None,
+    angle: Annotated[
+        list[float] | None, typer.Option("--angle", help="Angle of a line cut; may be given again.")
+    ] = None,
+) -> None:
+    """Draw a map as heat maps over frequency and angle, with line cuts."""
+    from slabsim import api
+
+    target = output or Path(map_file.stem + ".png")
+    api.draw_map(map_file, target, _quantity(quantity), angle)
+    typer.echo(str(target))
+
+
+@app.command()
+def schema(
+    output: Annotated[Path | None, typer.Option("--output", "-o", help="File to write. Default: the terminal.")] = None,
+) -> None:
+    """Print the JSON schema of the stack file, for editors that complete and check."""
+    import json
+
+    from slabsim.stack.schema import stack_schema
+
+    text = json.dumps(stack_schema(), indent=2)
+    if output:
+        _write(output, text + "\n")
+    else:
+        typer.echo(text)
+
+
+def _some_angles(sample: Stack) -> list[float]:
+    """Up to ten angles of the sweep, evenly spread, first and last among them."""
+    angles = sample.sweep.angles_deg
+    count = min(_MOST_ANGLES, angles.size)
+    return [float(angles[i]) for i in sorted({round(k * (angles.size - 1) / max(count - 1, 1)) for k in range(count)})]
+
+
+def _quantity(text: str | None) -> Any:
+    return _choice(text and text.upper(), "--quantity", ("T", "R", "A"))
+
+
+def _model(text: str | None) -> Any:
+    return _choice(text, "--model", ("nonlocal", "local"))
+
+
+def _choice(text: str | None, option: str, allowed: tuple[str, ...]) -> str | None:
+    if text is not None and text not in allowed:
+        raise typer.BadParameter(f"{text!r}; it must be one of {', '.join(allowed)}", param_hint=option)
+    return text
+
+
+def _write(path: Path, text: str) -> None:
+    from slabsim.errors import SlabsimError
+
+    try:
+        path.write_text(text, encoding="utf-8")
+    except OSError as error:
+        raise SlabsimError(f"{path}: cannot be written ({error.strerror}); choose another place") from error
+    typer.echo(str(path))
