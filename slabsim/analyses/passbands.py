@@ -18,6 +18,7 @@ from slabsim.errors import InputError
 from slabsim.stack.sample import Model, Polarization, Stack
 
 EDGE_TOLERANCE = 1e-12  # relative, of band edges; a band narrower than this cannot be resolved and is left out
+_NOISE = 1e-9  # relative height below which a maximum is rounding
 SKIRT = 0.1  # the shape factor compares the widths at the level and at this part of it
 
 
@@ -255,10 +256,9 @@ def _measure(
 
 
 def _ripple_db(inside: np.ndarray) -> float:
-    if inside.size < 3:
-        return 0.0
-    rise = np.diff(inside)
-    maxima = np.flatnonzero((rise[:-1] > 0.0) & (rise[1:] <= 0.0)) + 1
+    from scipy.signal import find_peaks
+
+    maxima, _ = find_peaks(inside, prominence=_NOISE * inside.max())
     if maxima.size < 2:
         return 0.0
     between = inside[maxima[0] : maxima[-1] + 1]
