@@ -62,12 +62,13 @@ def sweep(
     """Compute a stack over its frequencies and angles into a map file."""
     from time import perf_counter
 
-    from slabsim.cli.progress import bar
+    from slabsim.cli.progress import announce_compilation, bar
     from slabsim.stack.reader import read_stack
     from slabsim.sweeps.run import run_sweep
 
     sample = read_stack(stack)
     target = output or Path(stack.stem + ".h5")
+    announce_compilation()
     start = perf_counter()
     report = run_sweep(sample, target, resume=resume, replace=replace, compress=compress, progress=bar())
     typer.echo(str(report))
@@ -89,9 +90,11 @@ def passbands(
 ) -> None:
     """Print every pass band per polarization and angle, and how its edges shift with angle."""
     from slabsim import api
+    from slabsim.cli.progress import announce_compilation
     from slabsim.report import tables
 
     sample = api.load_stack(source)
+    announce_compilation()
     chosen = angle or _some_angles(sample)
     lists = api.find_bands(sample, sorted(chosen), api.read_level(level), _quantity(quantity), _model(model))
     unit = sample.sweep.spectral_unit
@@ -129,9 +132,11 @@ def compare(
     map's name and .png unless --figure names it.
     """
     from slabsim import api
+    from slabsim.cli.progress import announce_compilation
     from slabsim.report import tables
 
     sample = api.load_stack(source)
+    announce_compilation()
     chosen = sorted(angle or _some_angles(sample))
     if output is None:
         output = source if api.is_map(source) else Path(source.stem + "_compare.h5")

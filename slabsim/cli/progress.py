@@ -11,6 +11,17 @@ if TYPE_CHECKING:
     from rich.progress import Task
 
 
+def announce_compilation() -> None:
+    """Say on a terminal that the first run of all takes longer."""
+    from rich.console import Console
+
+    from slabsim.engine.cache import is_compiled
+
+    console = Console(stderr=True)
+    if console.is_terminal and not is_compiled():
+        console.print("Compiling the engine for this processor, some 15 seconds, once ...")
+
+
 def bar() -> Progress:
     """The bar on a terminal, silence elsewhere."""
     from rich.console import Console

@@ -9,18 +9,30 @@ home; here the first writable place of a list is taken.
 import hashlib
 import os
 import tempfile
+from functools import cache
 from pathlib import Path
 
-_COMPILED = ("vector_math.py", "kernels.py")
+_COMPILED = ("rows.py", "vector_math.py", "kernels.py")
 
 
 def use_cache_folder() -> Path:
     """Tell numba where to keep compiled code; called once, before the first compiled function."""
     import numba
 
-    folder = _writable(_candidates()) / _digest()
+    folder = cache_folder()
     numba.config.CACHE_DIR = str(folder)
     return folder
+
+
+@cache
+def cache_folder() -> Path:
+    """The folder that this run uses."""
+    return _writable(_candidates()) / _digest()
+
+
+def is_compiled() -> bool:
+    """Whether an earlier run left its compiled code; if not, the first solution waits for the compiler."""
+    return any(cache_folder().glob("**/*.nbc"))
 
 
 def _candidates() -> list[Path]:

@@ -16,7 +16,7 @@ from typing import Any
 
 import numpy as np
 
-from slabsim.engine import kernels as k
+from slabsim.engine import kernels, rows
 from slabsim.engine.pack import Recipe, pack
 from slabsim.engine.response import check_grid, squares
 from slabsim.errors import InputError
@@ -63,7 +63,10 @@ def absorbed_by_element(
         raise InputError(f"polarization is {polarization!r}; it must be 'TE' or 'TM'")
     recipe = pack(stack, model or stack.sweep.model, frequencies[:1])
     flux = np.concatenate(
-        [_flux(recipe, angles_deg[start : start + k.C], polarization) for start in range(0, angles_deg.size, k.C)],
+        [
+            _flux(recipe, angles_deg[start : start + rows.C], polarization)
+            for start in range(0, angles_deg.size, rows.C)
+        ],
         axis=1,
     )
     absorbed = np.zeros((len(stack.flatten()), angles_deg.size))
@@ -76,12 +79,12 @@ def _flux(recipe: Recipe, angles_deg: np.ndarray, polarization: Polarization) ->
     """Flux over incident flux behind element 0, 1, ... and in front of the last, shape (n_elements + 1, n_angles)."""
     sin2, cos2 = squares(angles_deg)
     n_elements = recipe.kinds.size
-    states = np.zeros((n_elements + 1, k.N_ROWS * k.C))
+    states = np.zeros((n_elements + 1, rows.N_ROWS * rows.C))
     switches = np.array([recipe.metal_back, True, True])
-    k.trace(recipe.kinds, recipe.rows, recipe.tables, recipe.media, sin2, cos2, switches, states)
-    work = states.reshape(n_elements + 1, k.N_ROWS, k.C)[:, :, : angles_deg.size]
-    row, m = (k.TM, k.FRONT_EPS) if polarization == "TM" else (k.TE, k.FRONT_MU)
-    z = np.sqrt(recipe.media[k.FRONT_EPS, 0] * recipe.media[k.FRONT_MU, 0] * cos2) / recipe.media[m, 0]
+    kernels.trace(recipe.kinds, recipe.rows, recipe.tables, recipe.media, sin2, cos2, switches, states)
+    work = states.reshape(n_elements + 1, rows.N_ROWS, rows.C)[:, :, : angles_deg.size]
+    row, m = (rows.TM, rows.FRONT_EPS) if polarization == "TM" else (rows.TE, rows.FRONT_MU)
+    z = np.sqrt(recipe.media[rows.FRONT_EPS, 0] * recipe.media[rows.FRONT_MU, 0] * cos2) / recipe.media[m, 0]
     a, b = _complex(work[-1], row, row + 2)
     scale = 2.0 * z / (z * a + b)
     flux = np.empty((n_elements + 1, angles_deg.size))
@@ -89,9 +92,9 @@ def _flux(recipe: Recipe, angles_deg: np.ndarray, polarization: Polarization) ->
     run = None
     for e in range(n_elements - 1, -1, -1):
         behind, after, kind = work[e], work[e + 1], recipe.kinds[e]
-        if kind == k.WIRE_FRONT and polarization == "TM":
+        if kind == rows.WIRE_FRONT and polarization == "TM":
             run = _Run(after)
-        if run is not None and kind != k.WIRE_BACK:
+        if run is not None and kind != rows.WIRE_BACK:
             run.step(kind, after)
             flux[e] = run.power(behind) * abs(scale) ** 2 / z
             continue
@@ -106,25 +109,25 @@ class _Run:
     """The covector g (h, v, e, psi) that vanishes on the true state, carried from the front through a run."""
 
     def __init__(self, front: np.ndarray) -> None:
-        nu, omega = _complex(front, k.NU, k.OMEGA)
+        nu, omega = _complex(front, rows.NU, rows.OMEGA)
         zero = np.zeros_like(nu)
         self.g = (zero, omega, zero, -nu)
-        self.transmission = _complex(front, k.TM + 4)
+        self.transmission = _complex(front, rows.TM + 4)
 
     def step(self, kind: int, after: np.ndarray) -> None:
         """Pass one kernel element, whose workspace is `after`."""
         h, v, e, psi = self.g
-        if kind == k.WIRE_RUN:
+        if kind == rows.WIRE_RUN:
             e, psi, h, v = _transfer(after, e, psi, h, v)  # the transposed transfer swaps (h, v) and (e, psi)
-        elif kind == k.WIRE_JOINT:
-            ratio, load = after[k.RATIO], _complex(after, k.LOAD)
+        elif kind == rows.WIRE_JOINT:
+            ratio, load = after[rows.RATIO], _complex(after, rows.LOAD)
             v, psi = ratio * (v + load * psi), psi / ratio
-        self.g = tuple(after[k.SCALE] * part for part in (h, v, e, psi))
+        self.g = tuple(after[rows.SCALE] * part for part in (h, v, e, psi))
 
     def power(self, behind: np.ndarray) -> np.ndarray:
         """Re(e h* + psi v*) of the state that the covector picks from the plane `behind`."""
         gh, gv, ge, gp = self.g
-        hv, hp, ev, ep, he = _complex(behind, *(k.RUN + 2 * j for j in range(5)))
+        hv, hp, ev, ep, he = _complex(behind, *(rows.RUN + 2 * j for j in range(5)))
         h = gv * hv + ge * he + gp * hp
         e = gv * ev + gp * ep - gh * he
         v = -gh * hv - ge * ev - gp * he
@@ -134,9 +137,9 @@ class _Run:
 
 def _transfer(work: np.ndarray, h: Any, v: Any, e: Any, psi: Any) -> tuple[np.ndarray, ...]:
     """Scaled transfer of a wire layer, back to front: `kernels` states its functions."""
-    eps, inv_eps = _complex(work, k.EPS, k.INV_EPS)
-    c = work[k.KP] * np.sqrt(work[k.S2])
-    half, xc, yc, xg, yg, xw, yw = _complex(work, k.DA, k.XC, k.YC, k.XG, k.YG, k.XW, k.YWW)
+    eps, inv_eps = _complex(work, rows.EPS, rows.INV_EPS)
+    c = work[rows.KP] * np.sqrt(work[rows.S2])
+    half, xc, yc, xg, yg, xw, yw = _complex(work, rows.DA, rows.XC, rows.YC, rows.XG, rows.YG, rows.XW, rows.YWW)
 
     def apply(mean: Any, difference: Any, first: Any, second: Any) -> tuple[Any, Any]:
         tilt = half * difference

@@ -21,7 +21,8 @@ an even function of each kz. Where wires are joined, the plane of admissible sta
 Pluecker coordinates (hv, h psi, e v, e psi, h e), in which the transfer is as bounded.
 
 Points are done in chunks of `C`. All rows of a chunk lie in one flat array at literal offsets: only so does
-the compiler see that they do not overlap, and turns the inner loops into vector instructions.
+the compiler see that they do not overlap, and turns the inner loops into vector instructions. The names of
+the rows are in `rows.py`.
 """
 
 import math
@@ -29,48 +30,13 @@ import math
 import numpy as np
 from numba import njit
 
+from slabsim.engine.rows import *
 from slabsim.engine.vector_math import FAST as _FAST
 from slabsim.engine.vector_math import TINY as _TINY
 from slabsim.engine.vector_math import inverse as _inverse
 from slabsim.engine.vector_math import root as _root
 from slabsim.engine.vector_math import select as _select
 from slabsim.engine.vector_math import wave as _wave
-
-C = 64  # points per chunk: its rows stay in the first-level cache
-
-# Kinds of element in a recipe
-PLAIN, UNIAXIAL, WIRES, SHEET, WIRE_BACK, WIRE_RUN, WIRE_JOINT, WIRE_FRONT = range(8)
-# How a sheet's admittance depends on the angle
-UNIFORM, PATCHES, STRIPS = range(3)
-
-# Rows of `params` (second axis); a complex value takes two rows
-DEPTH, EPS, INV_EPS, MU, INV_MU, EXCESS = 0, 1, 3, 5, 7, 9  # k0 d, ..., eps mu - eps_front mu_front
-STRETCH = 11  # uniaxial: 1 - eps/eps_zz
-KP2, KP, X_WIRE, ZC = 11, 12, 13, 15  # wires: (kp/k0)^2, kp/k0, X, zc
-END_PP, END_PF, END_FP, END_FF = 17, 19, 21, 23  # products of the end conditions, front x back
-NU, OMEGA = 0, 2  # WIRE_BACK, WIRE_FRONT: (v, psi) is a multiple of (nu, omega)
-RATIO, LOAD = 0, 2  # WIRE_JOINT: kp behind / kp before; kp^2 Z A / eta0
-Y_SHEET, TILT, FORM = 0, 2, 4  # SHEET: normalised admittance, 1/(2 eps_eff), UNIFORM | PATCHES | STRIPS
-N_PARAMS = 25
-
-# Rows of `media`: the two half-spaces and the wave number
-FRONT_EPS, FRONT_MU, BACK_EPS, BACK_MU = 0, 1, 2, 4
-N_MEDIA = 6
-# Rows of `out`
-R_RE, R_IM, T_RE, T_IM, R_POWER, T_POWER = range(6)
-N_OUT = 6
-
-# Rows of the workspace
-S2, Q2 = N_PARAMS, N_PARAMS + 1
-TE, TM = N_PARAMS + 2, N_PARAMS + 8  # a, b, t of each polarization
-RUN = N_PARAMS + 14  # Pluecker: hv, h psi, e v, e psi, h e; then the vector h, v, e, psi
-MODES = RUN + 18  # symmetric functions of the two modes of a wire layer
-CC, D, H, Y, KK, PI, HW, YW = (MODES + 2 * j for j in range(8))
-XC, YC, XG, YG, XW, YWW = (MODES + 16 + 2 * j for j in range(6))
-MEAN, DA, DET, L1, L2, GAP = (MODES + 28 + 2 * j for j in range(6))
-RARE, SCALE = MODES + 40, MODES + 41  # marks of `_modes`; the last normalisation
-RESULT = MODES + 42  # TE: N_OUT rows, TM: N_OUT rows
-N_ROWS = RESULT + 2 * N_OUT
 
 
 @njit(inline="always")
@@ -292,33 +258,45 @@ def _quotient_series(m2, n2, a2, b2):
     return y, kk, yg
 
 
+@njit(inline="always")
+def _minors(w, i):
+    """The 2x2 minors of a wire layer's transfer, named by rows | columns:
+
+    hv|hv, hp|hp, hv|hp, hv|ev, hp|hv, ev|hv, ev|hp, hp|ev, hv|ep, ep|hv, with p for psi; others equal one of these.
+    """
+    eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
+    half, mean, d, cc = _get(w, DA, i), _get(w, MEAN, i), _get(w, D, i), _get(w, CC, i)
+    ckk = w[S2 * C + i] * w[KP2 * C + i] * _get(w, KK, i)
+    h, dy = _get(w, H, i), half * _get(w, Y, i)
+    hw, dyw = _get(w, HW, i), half * _get(w, YW, i)
+    return (
+        cc,
+        cc - ckk,
+        eps * (h + dy),
+        eps * (h - dy),
+        inv_eps * (hw + dyw),
+        inv_eps * (hw - dyw),
+        (mean + half) * d + ckk,
+        (mean - half) * d + ckk,
+        eps * eps * d,
+        inv_eps * inv_eps * _get(w, DET, i) * d,
+    )
+
+
 @njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
 def _wires(w, n):
     """One wire layer whose ends are not joined, as a port of the fields alone."""
     for i in range(n):
-        eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
+        cc, u, a1, a2, b1, b2, v, v_swapped, ed, wd = _minors(w, i)
         pp, pf = _get(w, END_PP, i), _get(w, END_PF, i)
         fp, ff = _get(w, END_FP, i), _get(w, END_FF, i)
-        c2 = w[S2 * C + i] * w[KP2 * C + i]
         half = _get(w, DA, i)
-        d, det = _get(w, D, i), _get(w, DET, i)
-        a = _get(w, MEAN, i) + half
-        b = _get(w, MEAN, i) - half
-        ckk = c2 * _get(w, KK, i)
-        h, dy = _get(w, H, i), half * _get(w, Y, i)
-        hw, dyw = _get(w, HW, i), half * _get(w, YW, i)
-        cc, u = _get(w, CC, i), _get(w, CC, i) - ckk
-        a1, a2 = eps * (h + dy), eps * (h - dy)
-        b1, b2 = inv_eps * (hw + dyw), inv_eps * (hw - dyw)
-        v, v_swapped = a * d + ckk, b * d + ckk
-        n_hh = pp * a1 + pf * cc - fp * u - ff * b1
-        n_he = pp * (eps * eps * d) + (pf - fp) * a2 - ff * v_swapped
-        n_eh = pp * v + (pf - fp) * b2 - ff * (det * d * inv_eps * inv_eps)
-        n_ee = pp * a1 + pf * u - fp * cc - ff * b1
         m_vv = _get(w, XC, i) - half * _get(w, YC, i)
-        m_vp = eps * (_get(w, XG, i) - half * _get(w, YG, i))
-        m_pv = inv_eps * (_get(w, XW, i) - half * _get(w, YWW, i))
+        m_vp = _get(w, EPS, i) * (_get(w, XG, i) - half * _get(w, YG, i))
+        m_pv = _get(w, INV_EPS, i) * (_get(w, XW, i) - half * _get(w, YWW, i))
         hy, ex = _get(w, TM, i), _get(w, TM + 2, i)
+        n_hh, n_he = pp * a1 + pf * cc - fp * u - ff * b1, pp * ed + (pf - fp) * a2 - ff * v_swapped
+        n_eh, n_ee = pp * v + (pf - fp) * b2 - ff * wd, pp * a1 + pf * u - fp * cc - ff * b1
         _put(w, TM, i, n_hh * hy + n_he * ex)
         _put(w, TM + 2, i, n_eh * hy + n_ee * ex)
         _put(w, TM + 4, i, _get(w, TM + 4, i) * (pp * m_vp + (pf - fp) * m_vv - ff * m_pv))
@@ -364,40 +342,24 @@ def _transfer(w, i, h, v, e, psi):
 def _wire_run(w, n):
     """A wire layer inside a run: the second compound of its transfer on the plane, the transfer on the vector."""
     for i in range(n):
-        eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
+        cc, u, a1, a2, b1, b2, v, v_swapped, ed, wd = _minors(w, i)
         c = w[KP * C + i] * math.sqrt(w[S2 * C + i])
-        half = _get(w, DA, i)
-        d, det, kk = _get(w, D, i), _get(w, DET, i), _get(w, KK, i)
-        a = _get(w, MEAN, i) + half
-        b = _get(w, MEAN, i) - half
-        h, y, yw, hw = _get(w, H, i), _get(w, Y, i), _get(w, YW, i), _get(w, HW, i)
-        cc = _get(w, CC, i)
-        u = cc - c * c * kk
-        a1, a2 = eps * (h + half * y), eps * (h - half * y)
-        b1, b2 = inv_eps * (hw + half * yw), inv_eps * (hw - half * yw)
-        v, v_swapped = a * d + c * c * kk, b * d + c * c * kk
-        plus, minus = c * (half * kk + 0.5 * d), c * (half * kk - 0.5 * d)
-        cy, cyw = eps * (c * y), inv_eps * (c * yw)
+        half, d, ckk = _get(w, DA, i), _get(w, D, i), c * _get(w, KK, i)
+        plus, minus = half * ckk + 0.5 * c * d, half * ckk - 0.5 * c * d
+        cy, cyw = _get(w, EPS, i) * (c * _get(w, Y, i)), _get(w, INV_EPS, i) * (c * _get(w, YW, i))
         hv, hp = _get(w, RUN, i), _get(w, RUN + 2, i)
         ev, ep, he = _get(w, RUN + 4, i), _get(w, RUN + 6, i), _get(w, RUN + 8, i)
-        _put(w, RUN, i, cc * hv + a1 * hp + a2 * ev + eps * eps * d * ep - 2.0 * cy * he)
+        _put(w, RUN, i, cc * hv + a1 * hp + a2 * ev + ed * ep - 2.0 * cy * he)
         _put(w, RUN + 2, i, b1 * hv + u * hp + v_swapped * ev + a2 * ep - 2.0 * plus * he)
         _put(w, RUN + 4, i, b2 * hv + v * hp + u * ev + a1 * ep + 2.0 * minus * he)
-        _put(w, RUN + 6, i, inv_eps * inv_eps * det * d * hv + b2 * hp + b1 * ev + cc * ep + 2.0 * cyw * he)
-        new_he = (_get(w, PI, i) + 2.0 * c * c * kk) * he - cyw * hv - minus * hp + plus * ev + cy * ep
-        _put(w, RUN + 8, i, new_he)
-        vector = _transfer(
-            w,
-            i,
-            _get(w, RUN + 10, i),
-            _get(w, RUN + 12, i),
-            _get(w, RUN + 14, i),
-            _get(w, RUN + 16, i),
-        )
-        _put(w, RUN + 10, i, vector[0])
-        _put(w, RUN + 12, i, vector[1])
-        _put(w, RUN + 14, i, vector[2])
-        _put(w, RUN + 16, i, vector[3])
+        _put(w, RUN + 6, i, wd * hv + b2 * hp + b1 * ev + cc * ep + 2.0 * cyw * he)
+        _put(w, RUN + 8, i, (_get(w, PI, i) + 2.0 * c * ckk) * he - cyw * hv - minus * hp + plus * ev + cy * ep)
+        h, e = _get(w, RUN + 10, i), _get(w, RUN + 14, i)
+        h, v, e, psi = _transfer(w, i, h, _get(w, RUN + 12, i), e, _get(w, RUN + 16, i))
+        _put(w, RUN + 10, i, h)
+        _put(w, RUN + 12, i, v)
+        _put(w, RUN + 14, i, e)
+        _put(w, RUN + 16, i, psi)
 
 
 @njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
@@ -429,17 +391,13 @@ def _wire_front(w, n):
 
 
 @njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
-def _normalise_te(w, n):
-    """Scale the TE state to unit size, and its transmission alike."""
+def _normalise(w, n, te, tm):
+    """Scale the states to unit size, and their transmissions alike."""
     for i in range(n):
-        _rescale(w, i, TE, TE + 4)
-
-
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
-def _normalise_tm(w, n):
-    """Scale the TM state to unit size, and its transmission alike."""
-    for i in range(n):
-        _rescale(w, i, TM, TM + 4)
+        if te:
+            _rescale(w, i, TE, TE + 4)
+        if tm:
+            _rescale(w, i, TM, TM + 4)
 
 
 @njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
@@ -489,12 +447,10 @@ def _element(w, n, kind, te, tm):
                 _wires(w, n)
             else:
                 _wire_run(w, n)
-    if te:
-        _normalise_te(w, n)
-    if tm and kind in (WIRE_BACK, WIRE_RUN, WIRE_JOINT):
+    in_run = kind in (WIRE_BACK, WIRE_RUN, WIRE_JOINT)
+    _normalise(w, n, te, tm and not in_run)
+    if tm and in_run:
         _normalise_run(w, n)
-    elif tm:
-        _normalise_tm(w, n)
 
 
 @njit(nogil=True, cache=True, error_model="numpy")

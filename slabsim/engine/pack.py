@@ -11,7 +11,7 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from slabsim.constants import C0, ETA0, TWO_PI
-from slabsim.engine import kernels as k
+from slabsim.engine import rows
 from slabsim.materials.material import Material
 from slabsim.materials.sheets import film_admittance, patch_admittance, strip_admittance
 from slabsim.materials.wires import internal_impedance, plasma_wavenumber
@@ -143,12 +143,12 @@ class _Packer:
 
     def recipe(self) -> Recipe:
         """What has been collected, as arrays."""
-        media = np.zeros((k.N_MEDIA, self.frequencies.size))
-        media[k.FRONT_EPS], media[k.FRONT_MU] = self.front_eps, self.front_mu
+        media = np.zeros((rows.N_MEDIA, self.frequencies.size))
+        media[rows.FRONT_EPS], media[rows.FRONT_MU] = self.front_eps, self.front_mu
         back = self.stack.back if self.stack.back is not None else self.stack.front
-        _set(media, k.BACK_EPS, back.permittivity(self.frequencies))
-        _set(media, k.BACK_MU, back.permeability(self.frequencies))
-        empty = np.zeros((0, k.N_PARAMS, self.frequencies.size))
+        _set(media, rows.BACK_EPS, back.permittivity(self.frequencies))
+        _set(media, rows.BACK_MU, back.permeability(self.frequencies))
+        empty = np.zeros((0, rows.N_PARAMS, self.frequencies.size))
         return Recipe(
             kinds=np.array(self.kinds, dtype=np.int64),
             rows=np.array(self.rows, dtype=np.int64),
@@ -161,7 +161,7 @@ class _Packer:
     def plain(self, position: int, layer: Layer) -> None:
         """A layer without wires."""
         key = ("plain", layer.material, layer.thickness)
-        self._add(position, k.PLAIN, key, lambda table: self._medium(table, layer))
+        self._add(position, rows.PLAIN, key, lambda table: self._medium(table, layer))
 
     def uniaxial(self, position: int, layer: Layer, wires: WireSet) -> None:
         """Wires in the local model: eps_zz = eps + i/(k0 xi)."""
@@ -170,9 +170,9 @@ class _Packer:
             eps, _ = self._medium(table, layer)
             eps_zz = local_permittivity(layer, wires, self.frequencies)
             with np.errstate(divide="ignore", invalid="ignore"):  # at a lossless plasma edge: NaN points
-                _set(table, k.STRETCH, 1.0 - eps / eps_zz)
+                _set(table, rows.STRETCH, 1.0 - eps / eps_zz)
 
-        self._add(position, k.UNIAXIAL, ("uniaxial", layer.material, layer.thickness, wires), fill)
+        self._add(position, rows.UNIAXIAL, ("uniaxial", layer.material, layer.thickness, wires), fill)
 
     def wires(self, position: int, layer: Layer, wires: WireSet, behind: Layer | Sheet | None) -> None:
         """Wires in the nonlocal model: a port of its own, or a member of a run of joined layers."""
@@ -181,7 +181,7 @@ class _Packer:
         if front.kind != "joined" and back.kind != "joined":
             self._add(
                 position,
-                k.WIRES,
+                rows.WIRES,
                 ("wires", *key),
                 lambda table: self._set_ends(table, wires, self._wire_medium(table, layer, wires)),
             )
@@ -194,22 +194,22 @@ class _Packer:
             joint = ("joint", key, layer_behind.material, neighbour)
             self._add(
                 position,
-                k.WIRE_JOINT,
+                rows.WIRE_JOINT,
                 joint,
                 lambda table: self._set_joint(table, kp, wires, layer_behind, neighbour),
             )
         else:
             self._add(
                 position,
-                k.WIRE_BACK,
+                rows.WIRE_BACK,
                 ("back", *key),
                 lambda table: self._set_end(table, kp, wires, back, 1.0),
             )
-        self._add(position, k.WIRE_RUN, ("run", *key), lambda table: self._wire_medium(table, layer, wires))
+        self._add(position, rows.WIRE_RUN, ("run", *key), lambda table: self._wire_medium(table, layer, wires))
         if front.kind != "joined":
             self._add(
                 position,
-                k.WIRE_FRONT,
+                rows.WIRE_FRONT,
                 ("front", *key),
                 lambda table: self._set_end(table, kp, wires, front, -1.0),
             )
@@ -221,22 +221,22 @@ class _Packer:
             eps = before.permittivity(self.frequencies), after.permittivity(self.frequencies)
             if isinstance(sheet, Patches):
                 y0, ee = patch_admittance(sheet.period, sheet.gap, self.k0, *eps)
-                form = k.PATCHES
+                form = rows.PATCHES
             elif isinstance(sheet, Strips):
                 y0, ee = strip_admittance(sheet.period, sheet.width, self.k0, *eps)
-                form = k.STRIPS
+                form = rows.STRIPS
             else:
                 y0, ee = _film(sheet, *eps)
-                form = k.UNIFORM
-            _set(table, k.Y_SHEET, y0)
-            _set(table, k.TILT, 0.5 / ee)
-            table[k.FORM] = form
+                form = rows.UNIFORM
+            _set(table, rows.Y_SHEET, y0)
+            _set(table, rows.TILT, 0.5 / ee)
+            table[rows.FORM] = form
 
-        self._add(position, k.SHEET, ("sheet", sheet, before, after), fill)
+        self._add(position, rows.SHEET, ("sheet", sheet, before, after), fill)
 
     def _add(self, position: int, kind: int, key: object, fill: Callable[[np.ndarray], object]) -> None:
         if key not in self.known:
-            table = np.zeros((k.N_PARAMS, self.frequencies.size))
+            table = np.zeros((rows.N_PARAMS, self.frequencies.size))
             fill(table)
             self.known[key] = len(self.tables)
             self.tables.append(table)
@@ -247,19 +247,19 @@ class _Packer:
     def _medium(self, table: np.ndarray, layer: Layer) -> tuple[np.ndarray, np.ndarray]:
         eps = layer.material.permittivity(self.frequencies)
         mu = layer.material.permeability(self.frequencies)
-        table[k.DEPTH] = self.k0 * layer.thickness
-        for row, value in ((k.EPS, eps), (k.INV_EPS, 1.0 / eps), (k.MU, mu), (k.INV_MU, 1.0 / mu)):
+        table[rows.DEPTH] = self.k0 * layer.thickness
+        for row, value in ((rows.EPS, eps), (rows.INV_EPS, 1.0 / eps), (rows.MU, mu), (rows.INV_MU, 1.0 / mu)):
             _set(table, row, value)
-        _set(table, k.EXCESS, eps * mu - self.front_eps * self.front_mu)
+        _set(table, rows.EXCESS, eps * mu - self.front_eps * self.front_mu)
         return eps, mu
 
     def _wire_medium(self, table: np.ndarray, layer: Layer, wires: WireSet) -> float:
         eps, _ = self._medium(table, layer)
         kp, zeta = wire_constants(layer, wires, self.frequencies)
-        table[k.KP2], table[k.KP] = (kp / self.k0) ** 2, kp / self.k0
+        table[rows.KP2], table[rows.KP] = (kp / self.k0) ** 2, kp / self.k0
         zc = 1j * zeta * kp**2 / self.k0
-        _set(table, k.ZC, zc)
-        _set(table, k.X_WIRE, (kp / self.k0) ** 2 - eps * zc)
+        _set(table, rows.ZC, zc)
+        _set(table, rows.X_WIRE, (kp / self.k0) ** 2 - eps * zc)
         return kp
 
     def _end(self, kp: float, wires: WireSet, end: WireEnd, side: float) -> tuple[np.ndarray, np.ndarray]:
@@ -279,23 +279,23 @@ class _Packer:
 
     def _set_end(self, table: np.ndarray, kp: float, wires: WireSet, end: WireEnd, side: float) -> None:
         nu, omega = self._end(kp, wires, end, side)
-        _set(table, k.NU, nu)
-        _set(table, k.OMEGA, omega)
+        _set(table, rows.NU, nu)
+        _set(table, rows.OMEGA, omega)
 
     def _set_ends(self, table: np.ndarray, wires: WireSet, kp: float) -> None:
         nu_front, omega_front = self._end(kp, wires, wires.ends[0], -1.0)
         nu_back, omega_back = self._end(kp, wires, wires.ends[1], 1.0)
-        _set(table, k.END_PP, omega_front * omega_back)
-        _set(table, k.END_PF, omega_front * nu_back)
-        _set(table, k.END_FP, nu_front * omega_back)
-        _set(table, k.END_FF, nu_front * nu_back)
+        _set(table, rows.END_PP, omega_front * omega_back)
+        _set(table, rows.END_PF, omega_front * nu_back)
+        _set(table, rows.END_FP, nu_front * omega_back)
+        _set(table, rows.END_FF, nu_front * nu_back)
 
     def _set_joint(self, table: np.ndarray, kp: float, wires: WireSet, behind: Layer, beyond: WireSet) -> None:
         kp_behind, _ = wire_constants(behind, beyond, self.frequencies)
-        table[k.RATIO] = kp_behind / kp
+        table[rows.RATIO] = kp_behind / kp
         loads = (wires.ends[1].load, beyond.ends[0].load)
         total = sum((self._load(kp, wires, load) for load in loads if load is not None), start=np.zeros(()))
-        _set(table, k.LOAD, total)
+        _set(table, rows.LOAD, total)
 
 
 def _film(film: Film, eps_before: np.ndarray, eps_after: np.ndarray) -> tuple[np.ndarray, np.ndarray]:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from slabsim.engine import kernels
+from slabsim.engine import kernels, rows
 from slabsim.engine.pack import Recipe, pack
 from slabsim.errors import InputError
 from slabsim.stack.sample import Model, Polarization, Stack
@@ -90,15 +90,15 @@ class Solver:
 
     def _respond(self, recipe: Recipe, sin2: np.ndarray, cos2: np.ndarray) -> Response:
         wanted = np.array([recipe.metal_back, "TE" in self.polarizations, "TM" in self.polarizations])
-        out = np.full((2, kernels.N_OUT, recipe.media.shape[1], sin2.size), np.nan)
+        out = np.full((2, rows.N_OUT, recipe.media.shape[1], sin2.size), np.nan)
         kernels.solve(recipe.kinds, recipe.rows, recipe.tables, recipe.media, sin2, cos2, wanted, out)
         out = out[[("TE", "TM").index(name) for name in self.polarizations]]
-        r = out[:, kernels.R_RE] + 1j * out[:, kernels.R_IM]
-        R = out[:, kernels.R_POWER]
+        r = out[:, rows.R_RE] + 1j * out[:, rows.R_IM]
+        R = out[:, rows.R_POWER]
         if recipe.metal_back:
             return Response(self.polarizations, r, None, R, None, 1.0 - R)
-        T = out[:, kernels.T_POWER]
-        t = out[:, kernels.T_RE] + 1j * out[:, kernels.T_IM]
+        T = out[:, rows.T_POWER]
+        t = out[:, rows.T_RE] + 1j * out[:, rows.T_IM]
         for index, polarization in enumerate(self.polarizations):
             if polarization == "TM":
                 t[index] *= _magnetic_to_electric(recipe.media)[:, None]
@@ -123,7 +123,7 @@ def squares(angles_deg: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
 
 def _magnetic_to_electric(media: np.ndarray) -> np.ndarray:
     """Factor from t of the magnetic field to t of the electric field, shape (n_freqs,)."""
-    eps = media[kernels.BACK_EPS] + 1j * media[kernels.BACK_EPS + 1]
-    mu = media[kernels.BACK_MU] + 1j * media[kernels.BACK_MU + 1]
-    front = np.sqrt(media[kernels.FRONT_EPS] / media[kernels.FRONT_MU])
+    eps = media[rows.BACK_EPS] + 1j * media[rows.BACK_EPS + 1]
+    mu = media[rows.BACK_MU] + 1j * media[rows.BACK_MU + 1]
+    front = np.sqrt(media[rows.FRONT_EPS] / media[rows.FRONT_MU])
     return front / np.sqrt(eps / mu)

@@ -42,11 +42,18 @@ def is_sound(file: h5py.File, end: int) -> bool:
             needed = done[0] if dataset.ndim == 2 else done[:, np.newaxis]
             if np.any(needed & ~present):
                 return False
-    except (OSError, RuntimeError, KeyError):
+    except (OSError, RuntimeError, KeyError, AttributeError):  # AttributeError: a link leads nowhere
         return False
     extents.sort()
     starts, ends = np.array(extents, dtype=np.int64).reshape(-1, 2).T
     return bool(np.all(ends <= end) and np.all(starts[1:] >= ends[:-1]))
+
+
+def _is_compressed(file: h5py.File) -> bool:
+    try:
+        return any(dataset.compression for dataset in block_datasets(file))
+    except (OSError, KeyError, AttributeError):
+        return False
 
 
 def rebuild(path: Path, target: Path, stack: Stack, plan: Plan) -> None:
@@ -58,7 +65,7 @@ def rebuild(path: Path, target: Path, stack: Stack, plan: Plan) -> None:
             {name: read_text(text) for name, text in old[layout.ENVIRONMENT].items()},
             {name: read_text(text) for name, text in old[layout.MODELS].items()},
         )
-        compress = any(dataset.compression for dataset in block_datasets(old))
+        compress = _is_compressed(old)
         started = read_text(old[f"{layout.ENTRY}/start_time"])
         build(target, stack, plan, provenance, compress=compress, start_time=started)
         with target.open("r+b", buffering=0) as raw:
@@ -93,6 +100,6 @@ def _copy_block(old: h5py.File, new: h5py.File, place: Place) -> bool:
                 new[dataset.name][where] = dataset[where]
             elif place.azimuth == 0:
                 new[dataset.name][where[2:]] = dataset[where[2:]]
-    except OSError:  # a finished block that cannot be read any more is computed again
+    except (OSError, KeyError, AttributeError):  # a finished block that cannot be read is computed again
         return False
     return True
