@@ -39,6 +39,11 @@ from slabsim.engine.vector_math import select as _select
 from slabsim.engine.vector_math import wave as _wave
 
 
+# Inlined into the two entry points by the compiler: a kernel that was compiled for itself first would be found under the
+# same name by the linker, and it is not vectorised.
+kernel = njit(nogil=True, error_model="numpy", fastmath=_FAST, forceinline=True)
+
+
 @njit(inline="always")
 def _get(w, row, i):
     return complex(w[row * C + i], w[(row + 1) * C + i])
@@ -59,7 +64,7 @@ def _advance(w, row, i, p, c, mg, wm):
     _put(w, row + 4, i, p * _get(w, row + 4, i))
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _plain(w, n, te, tm):
     """A layer without wires, the polarizations asked for."""
     for i in range(n):
@@ -72,7 +77,7 @@ def _plain(w, n, te, tm):
             _advance(w, TM, i, p, c, _get(w, EPS, i) * g, _get(w, INV_EPS, i) * gk)
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _uniaxial_tm(w, n):
     """TM through wires in the local model: kz^2 = eps (mu - s^2/eps_zz)."""
     for i in range(n):
@@ -81,7 +86,7 @@ def _uniaxial_tm(w, n):
         _advance(w, TM, i, p, c, _get(w, EPS, i) * g, _get(w, INV_EPS, i) * (g * k2))
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _sheet(w, n, te, tm):
     """Zero-thickness sheet: the magnetic field steps by y E_t."""
     form = w[FORM * C]
@@ -99,7 +104,7 @@ def _sheet(w, n, te, tm):
             _put(w, TM, i, _get(w, TM, i) + y_tm * _get(w, TM + 2, i))
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _modes(w, n):
     """The two eigenvalues of Q, and every symmetric function of the two modes that a wire layer needs.
 
@@ -170,7 +175,7 @@ def _modes(w, n):
                 _rare_modes(w, i)
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@njit(nogil=True, error_model="numpy")
 def _sinc(z):
     """sin(z)/z."""
     if abs(z) < 1e-4:
@@ -178,7 +183,7 @@ def _sinc(z):
     return np.sin(z) / z
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@njit(nogil=True, error_model="numpy")
 def _rare_modes(w, i):
     """The divided differences where the modes coalesce or the layer is thin, without cancellation.
 
@@ -222,7 +227,7 @@ def _rare_modes(w, i):
     _put(w, YWW, i, mean * yg + _get(w, XG, i))
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@njit(nogil=True, error_model="numpy")
 def _naive_means(w, i, a, b, pi):
     """The means for phases a, b close to the real axis, one of them with the other sign of kappa."""
     depth = w[DEPTH * C + i]
@@ -238,7 +243,7 @@ def _naive_means(w, i, a, b, pi):
     _put(w, XW, i, -0.5j * pi * depth * (l1 * sinc_a + l2 * sinc_b))
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@njit(nogil=True, error_model="numpy")
 def _quotient_series(m2, n2, a2, b2):
     """Quotients of `_rare_modes` for small phases; sums of the Taylor series of sinc 2x, sinc^2 x, sinc x."""
     y, kk, yg = 0.0j, 0.0j, 0.0j
@@ -283,7 +288,7 @@ def _minors(w, i):
     )
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _wires(w, n):
     """One wire layer whose ends are not joined, as a port of the fields alone."""
     for i in range(n):
@@ -302,7 +307,7 @@ def _wires(w, n):
         _put(w, TM + 4, i, _get(w, TM + 4, i) * (pp * m_vp + (pf - fp) * m_vv - ff * m_pv))
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _wire_back(w, n):
     """Enter a run of joined wires from behind: the plane of (hy, Ex) and the end condition (nu, omega)."""
     for i in range(n):
@@ -338,7 +343,7 @@ def _transfer(w, i, h, v, e, psi):
     )
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _wire_run(w, n):
     """A wire layer inside a run: the second compound of its transfer on the plane, the transfer on the vector."""
     for i in range(n):
@@ -362,7 +367,7 @@ def _wire_run(w, n):
         _put(w, RUN + 16, i, psi)
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _wire_joint(w, n):
     """Wires joined: w continuous, phi continuous or dropping over a series load."""
     for i in range(n):
@@ -379,7 +384,7 @@ def _step_potential(w, i, row_v, row_psi, ratio, load):
     _put(w, row_psi, i, _get(w, row_psi, i) * (1.0 / ratio) + load * v)
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _wire_front(w, n):
     """Leave a run at its front end: the state of the plane that meets the end condition."""
     for i in range(n):
@@ -390,7 +395,7 @@ def _wire_front(w, n):
         _put(w, TM + 4, i, _get(w, TM + 4, i) * s)
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _normalise(w, n, te, tm):
     """Scale the states to unit size, and their transmissions alike."""
     for i in range(n):
@@ -400,7 +405,7 @@ def _normalise(w, n, te, tm):
             _rescale(w, i, TM, TM + 4)
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _normalise_run(w, n):
     """Scale the plane of a run to unit size, and its vector alike."""
     for i in range(n):
@@ -423,7 +428,7 @@ def _rescale(w, i, row, t_row):
     _put(w, t_row, i, scale * _get(w, t_row, i))
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@kernel
 def _element(w, n, kind, te, tm):
     """One element of the recipe, back to front."""
     if kind == PLAIN:
@@ -453,7 +458,7 @@ def _element(w, n, kind, te, tm):
         _normalise_run(w, n)
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@kernel
 def _load(w, n, table, f, by_angle):
     """Lay one element's table into the workspace: its column f, or the n columns from f on."""
     for k in range(table.shape[0]):
@@ -482,7 +487,7 @@ def _outgoing(k2, inv_m):
     return complex(_select((k2.imag == 0.0) & (z.real < 0.0), -z.real, z.real), z.imag)
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _begin(w, n, metal_back):
     """State behind the last element, from the media (in the rows of the table) and the angles."""
     back = 0.0 if metal_back else 1.0
@@ -500,7 +505,7 @@ def _begin(w, n, metal_back):
         _put(w, TM + 4, i, complex(back, 0.0))
 
 
-@njit(nogil=True, cache=True, error_model="numpy", fastmath=_FAST)
+@kernel
 def _end(w, n):
     """r, t, R, T of both polarizations from the state at the front face; t is the ratio of the field a."""
     for i in range(n):
@@ -525,7 +530,7 @@ def _finish(w, i, row, z_front, z_back, result):
     w[(result + T_POWER) * C + i] = (t.real * t.real + t.imag * t.imag) * z_back / z_front
 
 
-@njit(nogil=True, cache=True, error_model="numpy")
+@kernel
 def _chunk(w, n, kinds, rows, tables, media, at, by_angle, switches, trace):
     """Solve the n points whose sin^2 and cos^2 stand in the workspace, from column `at` of the tables on.
 
