@@ -152,11 +152,21 @@ def draw_map(
     with open_map(map_path) as found:
         quantity = quantity or ("T" if "transmittance" in found.quantities else "A")
         name = _DATASETS.get(quantity, quantity)
+        if name not in found.quantities:
+            raise InputError(f"{map_path}: {_absence(stack, quantity)}")
         panels = [(polarization, found.read(name, polarization)) for polarization in found.polarizations]
         state = "" if found.is_complete else " (unfinished)"
         title = f"{found.title or found.file_name}, {found.model} model{state}"
         unit = stack.sweep.spectral_unit
         map_figure(figure_path, title, found.frequencies, found.angles_deg, panels, unit, name, cut_angles_deg)
+
+
+def _absence(stack: Stack, quantity: str) -> str:
+    if quantity not in _DATASETS:
+        return f"quantity {quantity!r}; it must be one of {', '.join(_DATASETS)}"
+    if quantity == "T" and stack.back is None:
+        return "nothing is transmitted into a perfect conductor; ask for R or A"
+    return 'the map keeps amplitudes only; sweep again with store = ["power", "amplitude"]'
 
 
 def draw_comparison(comparison: Comparison, stack: Stack, figure_path: str | os.PathLike[str]) -> None:

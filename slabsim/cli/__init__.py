@@ -25,6 +25,6 @@ def main() -> None:
     except SlabsimError as error:
         print(f"error: {error}", file=sys.stderr)
         sys.exit(1)
-    except BrokenPipeError:  # the reader of a pipe, such as head, has seen enough
-        sys.stderr.close()
-        sys.exit(0)
+    except OSError as error:  # a full disk behind the standard output; files have errors of their own
+        print(f"error: {error.filename or 'the output'} cannot be written ({error.strerror})", file=sys.stderr)
+        sys.exit(1)

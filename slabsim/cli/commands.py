@@ -63,17 +63,22 @@ def sweep(
     from time import perf_counter
 
     from slabsim.cli.progress import announce_compilation, bar
+    from slabsim.errors import MapError, SweepInterrupted
     from slabsim.stack.reader import read_stack
     from slabsim.sweeps.run import run_sweep
 
+    _check_no_map(stack)
     sample = read_stack(stack)
     target = output or Path(stack.stem + ".h5")
     announce_compilation()
     start = perf_counter()
-    report = run_sweep(sample, target, resume=resume, replace=replace, compress=compress, progress=bar())
-    typer.echo(str(report))
+    try:
+        report = run_sweep(sample, target, resume=resume, replace=replace, compress=compress, progress=bar())
+    except (MapError, SweepInterrupted) as stop:
+        raise type(stop)(_with_stack(str(stop), stack, target)) from stop
+    typer.echo(_with_stack(str(report), stack, target))
     if report.n_computed:
-        points = f"{report.n_points:,} points by {len(sample.sweep.polarizations)} polarizations"
+        points = f"{_count(report.n_points, 'point')} by {_count(len(sample.sweep.polarizations), 'polarization')}"
         typer.echo(f"{points}, {sample.sweep.model} model, {perf_counter() - start:.1f} s")
     if not report.is_complete:
         raise typer.Exit(1)
@@ -96,7 +101,7 @@ def passbands(
     sample = api.load_stack(source)
     announce_compilation()
     chosen = angle or _some_angles(sample)
-    lists = api.find_bands(sample, sorted(chosen), api.read_level(level), _quantity(quantity), _model(model))
+    lists = api.find_bands(sample, sorted(set(chosen)), api.read_level(level), _quantity(quantity), _model(model))
     unit = sample.sweep.spectral_unit
     typer.echo(f"{sample.title or sample.file_name}: {model or sample.sweep.model} model, level {level}")
     tables.show(tables.band_table(lists, unit))
@@ -108,7 +113,7 @@ def passbands(
     ]
     if tracks:
         tables.show(tables.shift_table(tracks, unit))
-    if angle is None and len(chosen) < sample.sweep.angles_deg.size:
+    if not angle and len(chosen) < sample.sweep.angles_deg.size:
         typer.echo(f"{len(chosen)} of the {sample.sweep.angles_deg.size} angles of the sweep; others with --angle")
     if csv:
         _write(csv, tables.bands_as_csv(lists))
@@ -128,30 +133,40 @@ def compare(
 ) -> None:
     """Run the local and the nonlocal model of the wires, and say whether the local one can be trusted.
 
-    The differences go into the map if SOURCE is one, else into a new map, STACK's name_compare.h5; the figure has the
-    map's name and .png unless --figure names it.
+    The differences go into the map if SOURCE is one, else into a new map, NAME_compare.h5; the figure is
+    NAME_compare.png unless --figure names it. NAME is that of SOURCE.
     """
     from slabsim import api
     from slabsim.cli.progress import announce_compilation
     from slabsim.report import tables
+    from slabsim.report.figures import check_suffix
 
     sample = api.load_stack(source)
     announce_compilation()
-    chosen = sorted(angle or _some_angles(sample))
-    if output is None:
-        output = source if api.is_map(source) else Path(source.stem + "_compare.h5")
-    if not (api.is_map(source) and output == source):
-        api.sweep(sample, output, replace=replace)
+    chosen = sorted(set(angle or _some_angles(sample)))
+    is_in_place = api.is_map(source) and (output is None or output == source)
+    target = source if is_in_place else output or Path(source.stem + "_compare.h5")
+    if not is_in_place and target.exists() and not replace:
+        raise api.InputError(f"{target}: there is a file already; choose another path with --output, or --replace it")
+    if figure:
+        check_suffix(figure)
+    # everything is computed before a map is made or replaced: an error leaves the files as they were
     comparison = api.compare_models(sample, tolerance=tolerance, angles_deg=chosen, level=api.read_level(level))
-    api.store_comparison(comparison, output)
+    if not is_in_place:
+        api.sweep(sample, target, replace=replace)
+    api.store_comparison(comparison, target)
     typer.echo(f"{sample.title or sample.file_name}: level {level}")
     tables.show(tables.comparison_tables(comparison, sample.sweep.spectral_unit))
-    figure = figure or output.with_suffix(".png")
+    typer.echo(f"differences in {target} (/entry/comparison)")
+    drawn = figure or Path(source.stem + "_compare.png")
     try:
-        api.draw_comparison(comparison, sample, figure)
-        typer.echo(f"differences in {output} (/entry/comparison) and {figure}")
+        api.draw_comparison(comparison, sample, drawn)
     except api.SlabsimError as error:
-        typer.echo(f"differences in {output} (/entry/comparison); no figure: {error}")
+        if figure:
+            raise
+        typer.echo(f"no figure: {error}")
+    else:
+        typer.echo(f"figure {drawn}")
 
 
 @app.command()
@@ -206,8 +221,32 @@ def _some_angles(sample: Stack) -> list[float]:
     return [float(angles[i]) for i in sorted({round(k * (angles.size - 1) / max(count - 1, 1)) for k in range(count)})]
 
 
+def _check_no_map(path: Path) -> None:
+    from slabsim.errors import InputError
+    from slabsim.store.failures import has_signature
+
+    if path.is_file() and has_signature(path):
+        raise InputError(f"{path}: this is a map; sweep takes the stack file (TOML) that it was computed from")
+
+
+def _with_stack(message: str, stack: Path, target: Path) -> str:
+    """The message with the command to go on as it is to be typed, the stack file named."""
+    from shlex import quote
+
+    from slabsim.store.failures import RESUME_CURE
+
+    typed = RESUME_CURE.format(path=quote(str(target))).replace("STACK", quote(str(stack)), 1)
+    for path in (target.resolve(), target):
+        message = message.replace(RESUME_CURE.format(path=path), typed)
+    return message
+
+
+def _count(number: int, noun: str) -> str:
+    return f"{number:,} {noun}" if number == 1 else f"{number:,} {noun}s"
+
+
 def _quantity(text: str | None) -> Any:
-    return _choice(text and text.upper(), "--quantity", ("T", "R", "A"))
+    return _choice(text.upper() if text in ("t", "r", "a") else text, "--quantity", ("T", "R", "A"))
 
 
 def _model(text: str | None) -> Any:

@@ -48,8 +48,8 @@ class _Bar:
                 return Text("starting" if speed is None else f"{speed:,.0f} points/s")
 
         self._progress = Progress(
-            TextColumn("{task.completed:,.0f} of {task.total:,.0f} points"),
-            BarColumn(),
+            TextColumn("{task.completed:,.0f} of {task.total:,.0f}"),
+            BarColumn(bar_width=16),  # ten million points fit into 80 columns
             TaskProgressColumn(),
             Rate(),
             TextColumn("left"),

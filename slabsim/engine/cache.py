@@ -12,7 +12,7 @@ import tempfile
 from functools import cache
 from pathlib import Path
 
-_COMPILED = ("rows.py", "vector_math.py", "kernels.py")
+_COMPILED = ("rows.py", "vector_math.py", "coalescing.py", "half_spaces.py", "kernels.py")
 
 
 def use_cache_folder() -> Path:

@@ -30,60 +30,96 @@ import math
 import numpy as np
 from numba import njit
 
+from slabsim.engine.coalescing import get as _get
+from slabsim.engine.coalescing import put as _put
+from slabsim.engine.coalescing import rare_modes
+from slabsim.engine.half_spaces import begin, end, kernel
 from slabsim.engine.rows import *
-from slabsim.engine.vector_math import FAST as _FAST
 from slabsim.engine.vector_math import TINY as _TINY
+from slabsim.engine.vector_math import expm1 as _expm1
 from slabsim.engine.vector_math import inverse as _inverse
 from slabsim.engine.vector_math import root as _root
 from slabsim.engine.vector_math import select as _select
+from slabsim.engine.vector_math import sincos as _sincos
 from slabsim.engine.vector_math import wave as _wave
 
 
-# Inlined into the two entry points by the compiler: a kernel that was compiled for itself first would be found under the
-# same name by the linker, and it is not vectorised.
-kernel = njit(nogil=True, error_model="numpy", fastmath=_FAST, forceinline=True)
+@kernel
+def _waves(w, n, row):
+    """p, c, g of a mode (rows P, Q, G from `row` on), whose kappa^2 stands in the rows K2.
 
-
-@njit(inline="always")
-def _get(w, row, i):
-    return complex(w[row * C + i], w[(row + 1) * C + i])
-
-
-@njit(inline="always")
-def _put(w, row, i, z):
-    w[row * C + i] = z.real
-    w[(row + 1) * C + i] = z.imag
-
-
-@njit(inline="always")
-def _advance(w, row, i, p, c, mg, wm):
-    """(a, b) <- (c a + m g b, kappa^2 g / m a + c b), t <- t p."""
-    a, b = _get(w, row, i), _get(w, row + 2, i)
-    _put(w, row, i, c * a + mg * b)
-    _put(w, row + 2, i, wm * a + c * b)
-    _put(w, row + 4, i, p * _get(w, row + 4, i))
+    Four short loops are twice as fast as one: the latency of a root followed by exponentials is hidden only if several
+    points are on their way at once.
+    """
+    for i in range(n):
+        kappa, inv_size = _root(_get(w, row + K2, i))
+        _put(w, row + KAPPA, i, kappa)
+        w[(row + INV_SIZE) * C + i] = inv_size
+    for i in range(n):
+        w[(row + EM1) * C + i] = _expm1(-w[(row + KAPPA + 1) * C + i] * w[DEPTH * C + i])
+    for i in range(n):
+        sn, cs = _sincos(w[(row + KAPPA) * C + i] * w[DEPTH * C + i])
+        w[(row + SIN) * C + i], w[(row + COS) * C + i] = sn, cs
+    for i in range(n):
+        em1, sn, cs = w[(row + EM1) * C + i], w[(row + SIN) * C + i], w[(row + COS) * C + i]
+        p, c, g = _wave(_get(w, row + KAPPA, i), w[(row + INV_SIZE) * C + i], em1, sn, cs)
+        _put(w, row + WAVE_P, i, p)
+        _put(w, row + WAVE_C, i, c)
+        _put(w, row + WAVE_G, i, g)
 
 
 @kernel
 def _plain(w, n, te, tm):
     """A layer without wires, the polarizations asked for."""
     for i in range(n):
-        k2 = _get(w, EXCESS, i) + w[Q2 * C + i]
-        p, c, g = _wave(k2, w[DEPTH * C + i])
-        gk = g * k2
+        _put(w, FIRST + K2, i, _get(w, EXCESS, i) + w[Q2 * C + i])
+    _waves(w, n, FIRST)
+    if te:
+        _advance(w, n, TE, MU)
+    if tm:
+        _advance(w, n, TM, EPS)
+
+
+@kernel
+def _advance(w, n, row, m):
+    """(a, b) <- (c a + m g b, kappa^2 g / m a + c b), t <- t p; m is eps or mu, 1/m stands behind it."""
+    for i in range(n):
+        p, c, g = _get(w, FIRST + WAVE_P, i), _get(w, FIRST + WAVE_C, i), _get(w, FIRST + WAVE_G, i)
+        a, b = _get(w, row, i), _get(w, row + 2, i)
+        _put(w, row, i, c * a + _get(w, m, i) * g * b)
+        _put(w, row + 2, i, _get(w, m + 2, i) * (g * _get(w, FIRST + K2, i)) * a + c * b)
+        _put(w, row + 4, i, p * _get(w, row + 4, i))
+
+
+@kernel
+def _transparent(w, n, te, tm):
+    """A lossless layer at least as dense as the front: kz is real, and so are the chain matrices but for a factor i."""
+    for i in range(n):
+        k2 = w[EXCESS * C + i] + w[Q2 * C + i]
+        kappa = math.sqrt(k2 + _TINY)
+        sn, cs = _sincos(kappa * w[DEPTH * C + i])
+        g = sn / kappa
         if te:
-            _advance(w, TE, i, p, c, _get(w, MU, i) * g, _get(w, INV_MU, i) * gk)
+            _turn(w, TE, i, cs, w[MU * C + i] * g, w[INV_MU * C + i] * g * k2)
         if tm:
-            _advance(w, TM, i, p, c, _get(w, EPS, i) * g, _get(w, INV_EPS, i) * gk)
+            _turn(w, TM, i, cs, w[EPS * C + i] * g, w[INV_EPS * C + i] * g * k2)
+
+
+@njit(inline="always")
+def _turn(w, row, i, c, ms, ws):
+    """(a, b) <- (c a - i m s b, -i kappa^2 s / m a + c b)."""
+    a, b = _get(w, row, i), _get(w, row + 2, i)
+    _put(w, row, i, complex(c * a.real + ms * b.imag, c * a.imag - ms * b.real))
+    _put(w, row + 2, i, complex(c * b.real + ws * a.imag, c * b.imag - ws * a.real))
 
 
 @kernel
 def _uniaxial_tm(w, n):
     """TM through wires in the local model: kz^2 = eps (mu - s^2/eps_zz)."""
     for i in range(n):
-        k2 = _get(w, EXCESS, i) + w[Q2 * C + i] + _get(w, STRETCH, i) * w[S2 * C + i]
-        p, c, g = _wave(k2, w[DEPTH * C + i])
-        _advance(w, TM, i, p, c, _get(w, EPS, i) * g, _get(w, INV_EPS, i) * (g * k2))
+        _put(w, FIRST + K2, i, _get(w, EXCESS, i) + w[Q2 * C + i] + _get(w, STRETCH, i) * w[S2 * C + i])
+    _waves(w, n, FIRST)
+    _advance(w, n, TM, EPS)
 
 
 @kernel
@@ -117,182 +153,142 @@ def _modes(w, n):
         XC, XG, XW: means of cos, g, w of the modes, times PI;   YC, YG, YWW: their divided differences
 
     Points where the gap closes, or where the layer is thin, lose digits in the differences; they are marked
-    in the row RARE and done again by `_rare_modes`.
+    in the row RARE and done again by `rare_modes`.
     """
-    rare = False
     for i in range(n):
-        depth = w[DEPTH * C + i]
-        s2 = w[S2 * C + i]
-        eps, mu = _get(w, EPS, i), _get(w, MU, i)
-        x_wire, zc = _get(w, X_WIRE, i), _get(w, ZC, i)
+        s2, eps, mu = w[S2 * C + i], _get(w, EPS, i), _get(w, MU, i)
+        x_wire = _get(w, X_WIRE, i)
         a = _get(w, EXCESS, i) + w[Q2 * C + i]
-        c2 = s2 * w[KP2 * C + i]
         diff = eps * (mu - 1.0) - s2 + x_wire  # A - B
-        det = eps * (a - mu * x_wire - s2 * zc)
-        mean = a - 0.5 * diff
-        gap, gap2 = _root(diff * diff + 4.0 * c2)
-        # the larger root by addition, the smaller from the determinant: no cancellation
+        gap, inv_gap2 = _root(diff * diff + 4.0 * (s2 * w[KP2 * C + i]))
+        _put(w, DA, i, 0.5 * diff)
+        _put(w, DET, i, eps * (a - mu * x_wire - s2 * _get(w, ZC, i)))
+        _put(w, MEAN, i, a - 0.5 * diff)
+        _put(w, GAP, i, gap)
+        w[INV_GAP2 * C + i] = inv_gap2
+    _squares(w, n)
+    _waves(w, n, FIRST)
+    _waves(w, n, SECOND)
+
+
+@kernel
+def _squares(w, n):
+    """kappa^2 of both modes: the larger root by addition, the smaller from the determinant, so that nothing cancels."""
+    for i in range(n):
+        mean, gap = _get(w, MEAN, i), _get(w, GAP, i)
         adds = mean.real * gap.real + mean.imag * gap.imag >= 0.0
         gap = complex(_select(adds, gap.real, -gap.real), _select(adds, gap.imag, -gap.imag))
-        l1 = mean + 0.5 * gap
-        l1 = complex(l1.real + _TINY, l1.imag)
-        l2 = det * _inverse(l1)
-        p1, c1, g1 = _wave(l1, depth)
-        p2, cb, g2 = _wave(l2, depth)
-        w1, w2 = l1 * g1, l2 * g2
-        inv = _inverse(complex(gap.real + _TINY, gap.imag))
-        cc, d, pp = c1 * cb, g1 * g2, p1 * p2
+        larger = mean + 0.5 * gap
+        larger = complex(larger.real + _TINY, larger.imag)
+        _put(w, GAP, i, gap)
+        _put(w, FIRST + K2, i, larger)
+        _put(w, SECOND + K2, i, _get(w, DET, i) * _inverse(larger))
+
+
+@kernel
+def _ideal_modes(w, n):
+    """The same for perfect conductors in a non-magnetic host: the TEM mode, l1 = eps, depends on frequency alone."""
+    for i in range(n):
+        eps, s2, kp2 = _get(w, EPS, i), w[S2 * C + i], w[KP2 * C + i]
+        l2 = _get(w, EXCESS, i) + w[Q2 * C + i] - kp2
+        _put(w, DA, i, complex(0.5 * (kp2 - s2), 0.0))
+        _put(w, DET, i, eps * l2)
+        _put(w, MEAN, i, 0.5 * (eps + l2))
+        _put(w, GAP, i, complex(kp2 + s2, 0.0))
+        w[INV_GAP2 * C + i] = 1.0 / ((kp2 + s2) * (kp2 + s2))
+        _put(w, FIRST + K2, i, eps)
+        _put(w, SECOND + K2, i, l2)
+        _put(w, FIRST + WAVE_P, i, _get(w, TEM, i))
+        _put(w, FIRST + WAVE_C, i, _get(w, TEM + 2, i))
+        _put(w, FIRST + WAVE_G, i, _get(w, TEM + 4, i))
+    _waves(w, n, SECOND)
+
+
+@kernel
+def _combine(w, n):
+    """The symmetric functions of the two modes that the fields need. (Longer loops are not vectorised.)"""
+    for i in range(n):
+        c1, g1, l1 = _get(w, FIRST + WAVE_C, i), _get(w, FIRST + WAVE_G, i), _get(w, FIRST + K2, i)
+        c2, g2, l2 = _get(w, SECOND + WAVE_C, i), _get(w, SECOND + WAVE_G, i), _get(w, SECOND + K2, i)
+        gap, inv_gap2 = _get(w, GAP, i), w[INV_GAP2 * C + i]
+        inv = complex(gap.real * inv_gap2, -gap.imag * inv_gap2)
+        first, second = c1 * g2, c2 * g1
+        _put(w, H, i, 0.5 * (first + second))
+        _put(w, Y, i, (first - second) * inv)
+        _put(w, HW, i, 0.5 * (first * l2 + second * l1))
+        _put(w, YW, i, (first * l2 - second * l1) * inv)
+        cc, d, pp = c1 * c2, g1 * g2, _get(w, FIRST + WAVE_P, i) * _get(w, SECOND + WAVE_P, i)
         _put(w, CC, i, cc)
         _put(w, D, i, d)
         _put(w, PI, i, pp)
-        _put(w, H, i, 0.5 * (c1 * g2 + cb * g1))
-        _put(w, Y, i, (c1 * g2 - cb * g1) * inv)
-        _put(w, KK, i, 2.0 * (cc - pp - mean * d) * inv * inv)
-        _put(w, HW, i, 0.5 * (c1 * w2 + cb * w1))
-        _put(w, YW, i, (c1 * w2 - cb * w1) * inv)
-        _put(w, XC, i, 0.5 * (c1 * p2 + cb * p1))
-        _put(w, YC, i, (c1 * p2 - cb * p1) * inv)
-        _put(w, XG, i, 0.5 * (g1 * p2 + g2 * p1))
-        _put(w, YG, i, (g1 * p2 - g2 * p1) * inv)
-        _put(w, XW, i, 0.5 * (w1 * p2 + w2 * p1))
-        _put(w, YWW, i, (w1 * p2 - w2 * p1) * inv)
-        _put(w, MEAN, i, mean)
-        _put(w, DA, i, 0.5 * diff)
-        _put(w, DET, i, det)
-        _put(w, L1, i, l1)
-        _put(w, L2, i, l2)
-        _put(w, GAP, i, gap)
-        spread = 0.25 * (diff.real * diff.real + diff.imag * diff.imag) + c2
-        size = abs(l1.real) + abs(l1.imag) + abs(l2.real) + abs(l2.imag)
-        closing = (spread > 1e3 * gap2) | (gap2 < 1e-24 * size * size)
-        thin = size * depth * depth < 1e-3
-        w[RARE * C + i] = _select(closing | thin, 1.0, 0.0)
+        _put(w, KK, i, 2.0 * (cc - pp - _get(w, MEAN, i) * d) * inv * inv)
+
+
+@kernel
+def _combine_transfer(w, n):
+    """The symmetric functions that the transmission needs."""
     for i in range(n):
-        rare = rare | (w[RARE * C + i] > 0.0)
-    if rare:
-        for i in range(n):
-            if w[RARE * C + i] > 0.0:
-                _rare_modes(w, i)
+        p1, c1, g1 = _get(w, FIRST + WAVE_P, i), _get(w, FIRST + WAVE_C, i), _get(w, FIRST + WAVE_G, i)
+        p2, c2, g2 = _get(w, SECOND + WAVE_P, i), _get(w, SECOND + WAVE_C, i), _get(w, SECOND + WAVE_G, i)
+        l1, l2 = _get(w, FIRST + K2, i), _get(w, SECOND + K2, i)
+        gap, inv_gap2 = _get(w, GAP, i), w[INV_GAP2 * C + i]
+        inv = complex(gap.real * inv_gap2, -gap.imag * inv_gap2)
+        c1, c2, g1, g2 = c1 * p2, c2 * p1, g1 * p2, g2 * p1
+        _put(w, XC, i, 0.5 * (c1 + c2))
+        _put(w, YC, i, (c1 - c2) * inv)
+        _put(w, XG, i, 0.5 * (g1 + g2))
+        _put(w, YG, i, (g1 - g2) * inv)
+        _put(w, XW, i, 0.5 * (l1 * g1 + l2 * g2))
+        _put(w, YWW, i, (l1 * g1 - l2 * g2) * inv)
 
 
-@njit(nogil=True, error_model="numpy")
-def _sinc(z):
-    """sin(z)/z."""
-    if abs(z) < 1e-4:
-        return 1.0 - z * z / 6.0
-    return np.sin(z) / z
+@kernel
+def _mark_rare(w, n):
+    """Mark the points where the modes coalesce or the layer is thin: `rare_modes` does them again."""
+    for i in range(n):
+        l1, l2, half = _get(w, FIRST + K2, i), _get(w, SECOND + K2, i), _get(w, DA, i)
+        inv_gap2, depth = w[INV_GAP2 * C + i], w[DEPTH * C + i]
+        spread = half.real * half.real + half.imag * half.imag + w[S2 * C + i] * w[KP2 * C + i]
+        size = abs(l1.real) + abs(l1.imag) + abs(l2.real) + abs(l2.imag)
+        closing = (spread * inv_gap2 > 1e3) | (size * size * inv_gap2 > 1e24)
+        w[RARE * C + i] = _select(closing | (size * depth * depth < 1e-3), 1.0, 0.0)
 
 
-@njit(nogil=True, error_model="numpy")
-def _rare_modes(w, i):
-    """The divided differences where the modes coalesce or the layer is thin, without cancellation.
-
-    With m, n = half sum and half difference of the two phases and phi1 phi2 = m^2 - n^2:
-
-        Y  = -i PI d^3/2 (sinc 2m - sinc 2n)/(phi1 phi2)      KK = PI d^4/4 (sinc^2 m - sinc^2 n)/(phi1 phi2)
-        YC = -PI d^2/2 sinc m sinc n                          YG = -i PI d^3/2 (cos m sinc n - sinc m cos n)/(phi1 phi2)
-
-    For small phases the quotients are summed as series; else PI = exp(2 i m) is multiplied in, so that no
-    exponential grows.
-    """
-    depth = w[DEPTH * C + i]
-    mean, gap = _get(w, MEAN, i), _get(w, GAP, i)
-    k1, _ = _root(_get(w, L1, i))
-    k2, _ = _root(_get(w, L2, i))
-    apart = k1.real * k2.real + k1.imag * k2.imag < 0.0
-    if apart:
-        k2 = -k2  # all is even in kappa: take the pair that lies together
-    m = 0.5 * (k1 + k2) * depth
-    n = 0.25 * gap * depth * depth / m  # (k1 - k2) depth/2 without cancellation
-    if abs(n) > 0.5:
-        return  # the phases differ enough: the plain differences keep their digits
-    a, b, half = m + n, m - n, np.exp(1j * m)
-    pi = half * half
-    sinc_m = (pi - 1.0) / (2j * m) if abs(m) > 1e-4 else half * _sinc(m)  # times exp(i m)
-    if abs(m) < 0.5:
-        y, kk, yg = _quotient_series(m * m, n * n, a * a, b * b)
-        y, kk, yg = pi * y, pi * kk, pi * yg
-    else:
-        y = ((pi * pi - 1.0) / (4j * m) - pi * _sinc(2.0 * n)) / (a * b)
-        kk = (sinc_m * sinc_m - pi * _sinc(n) ** 2) / (a * b)
-        yg = half * (0.5 * (pi + 1.0) * _sinc(n) - sinc_m * np.cos(n)) / (a * b)
-    if apart:
-        _naive_means(w, i, a, b, pi)
-    y, kk, yg = -0.5j * depth**3 * y, 0.25 * depth**4 * kk, -0.5j * depth**3 * yg
-    _put(w, Y, i, y)
-    _put(w, KK, i, kk)
-    _put(w, YW, i, mean * y - _get(w, H, i))
-    _put(w, YC, i, -0.5 * depth * depth * half * sinc_m * _sinc(n))
-    _put(w, YG, i, yg)
-    _put(w, YWW, i, mean * yg + _get(w, XG, i))
+@kernel
+def _redo_rare(w, n):
+    """Points where the modes coalesce or the layer is thin."""
+    for i in range(n):
+        if w[RARE * C + i] > 0.0:
+            rare_modes(w, i)
 
 
-@njit(nogil=True, error_model="numpy")
-def _naive_means(w, i, a, b, pi):
-    """The means for phases a, b close to the real axis, one of them with the other sign of kappa."""
-    depth = w[DEPTH * C + i]
-    l1, l2 = _get(w, L1, i), _get(w, L2, i)
-    cos_a, cos_b, sinc_a, sinc_b = np.cos(a), np.cos(b), _sinc(a), _sinc(b)
-    _put(w, CC, i, pi * cos_a * cos_b)
-    _put(w, D, i, -pi * depth * depth * sinc_a * sinc_b)
-    _put(w, PI, i, pi)
-    _put(w, H, i, -0.5j * pi * depth * (cos_a * sinc_b + cos_b * sinc_a))
-    _put(w, HW, i, -0.5j * pi * depth * (cos_a * l2 * sinc_b + cos_b * l1 * sinc_a))
-    _put(w, XC, i, 0.5 * pi * (cos_a + cos_b))
-    _put(w, XG, i, -0.5j * pi * depth * (sinc_a + sinc_b))
-    _put(w, XW, i, -0.5j * pi * depth * (l1 * sinc_a + l2 * sinc_b))
-
-
-@njit(nogil=True, error_model="numpy")
-def _quotient_series(m2, n2, a2, b2):
-    """Quotients of `_rare_modes` for small phases; sums of the Taylor series of sinc 2x, sinc^2 x, sinc x."""
-    y, kk, yg = 0.0j, 0.0j, 0.0j
-    sums_mn, sums_ab = 1.0 + 0.0j, 1.0 + 0.0j  # (m^2k - n^2k)/(m^2 - n^2)
-    power_n, power_b = n2, b2
-    factorial = 6.0  # (2k + 1)!
-    sign, four = -1.0, 4.0
-    for k in range(1, 16):
-        y += sign * four / factorial * sums_mn
-        kk += sign * 2.0 * four / (factorial * (2 * k + 2)) * sums_mn
-        yg += sign * 2.0 / factorial * sums_ab  # a^2 - b^2 = 4 m n: half of it is in the prefactor
-        sums_mn = m2 * sums_mn + power_n
-        sums_ab = a2 * sums_ab + power_b
-        power_n, power_b = power_n * n2, power_b * b2
-        factorial *= (2 * k + 2) * (2 * k + 3)
-        sign, four = -sign, 4.0 * four
-    return y, kk, yg
-
-
-@njit(inline="always")
-def _minors(w, i):
-    """The 2x2 minors of a wire layer's transfer, named by rows | columns:
-
-    hv|hv, hp|hp, hv|hp, hv|ev, hp|hv, ev|hv, ev|hp, hp|ev, hv|ep, ep|hv, with p for psi; others equal one of these.
-    """
-    eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
-    half, mean, d, cc = _get(w, DA, i), _get(w, MEAN, i), _get(w, D, i), _get(w, CC, i)
-    ckk = w[S2 * C + i] * w[KP2 * C + i] * _get(w, KK, i)
-    h, dy = _get(w, H, i), half * _get(w, Y, i)
-    hw, dyw = _get(w, HW, i), half * _get(w, YW, i)
-    return (
-        cc,
-        cc - ckk,
-        eps * (h + dy),
-        eps * (h - dy),
-        inv_eps * (hw + dyw),
-        inv_eps * (hw - dyw),
-        (mean + half) * d + ckk,
-        (mean - half) * d + ckk,
-        eps * eps * d,
-        inv_eps * inv_eps * _get(w, DET, i) * d,
-    )
+@kernel
+def _minors(w, n):
+    """The 2x2 minors of a wire layer's transfer; M_xy_uv: rows x, y and columns u, v, with p for psi."""
+    for i in range(n):
+        eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
+        half, mean, d, cc = _get(w, DA, i), _get(w, MEAN, i), _get(w, D, i), _get(w, CC, i)
+        ckk = w[S2 * C + i] * w[KP2 * C + i] * _get(w, KK, i)
+        h, dy = _get(w, H, i), half * _get(w, Y, i)
+        hw, dyw = _get(w, HW, i), half * _get(w, YW, i)
+        _put(w, M_HP_HP, i, cc - ckk)
+        _put(w, M_HV_HP, i, eps * (h + dy))
+        _put(w, M_HV_EV, i, eps * (h - dy))
+        _put(w, M_HP_HV, i, inv_eps * (hw + dyw))
+        _put(w, M_EV_HV, i, inv_eps * (hw - dyw))
+        _put(w, M_EV_HP, i, (mean + half) * d + ckk)
+        _put(w, M_HP_EV, i, (mean - half) * d + ckk)
+        _put(w, M_HV_EP, i, eps * eps * d)
+        _put(w, M_EP_HV, i, inv_eps * inv_eps * _get(w, DET, i) * d)
 
 
 @kernel
 def _wires(w, n):
     """One wire layer whose ends are not joined, as a port of the fields alone."""
     for i in range(n):
-        cc, u, a1, a2, b1, b2, v, v_swapped, ed, wd = _minors(w, i)
+        cc, u, a1, a2 = _get(w, CC, i), _get(w, M_HP_HP, i), _get(w, M_HV_HP, i), _get(w, M_HV_EV, i)
+        b1, b2, v, v_swapped = _get(w, M_HP_HV, i), _get(w, M_EV_HV, i), _get(w, M_EV_HP, i), _get(w, M_HP_EV, i)
+        ed, wd = _get(w, M_HV_EP, i), _get(w, M_EP_HV, i)
         pp, pf = _get(w, END_PP, i), _get(w, END_PF, i)
         fp, ff = _get(w, END_FP, i), _get(w, END_FF, i)
         half = _get(w, DA, i)
@@ -324,30 +320,30 @@ def _wire_back(w, n):
         _put(w, RUN + 16, i, omega)
 
 
-@njit(inline="always")
-def _transfer(w, i, h, v, e, psi):
-    """PI M (h, v, e, psi): the 4x4 transfer of a wire layer, back to front."""
-    eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
-    c = w[KP * C + i] * math.sqrt(w[S2 * C + i])
-    half = _get(w, DA, i)
-    xc, yc = _get(w, XC, i), _get(w, YC, i)
-    xg, yg = _get(w, XG, i), _get(w, YG, i)
-    xw, yw = _get(w, XW, i), _get(w, YWW, i)
-    ge, gp = eps * e, eps * psi
-    wh, wv = inv_eps * h, inv_eps * v
-    return (
-        (xc + half * yc) * h + c * yc * v + (xg + half * yg) * ge + c * yg * gp,
-        (xc - half * yc) * v + c * yc * h + (xg - half * yg) * gp + c * yg * ge,
-        (xc + half * yc) * e + c * yc * psi + (xw + half * yw) * wh + c * yw * wv,
-        (xc - half * yc) * psi + c * yc * e + (xw - half * yw) * wv + c * yw * wh,
-    )
+@kernel
+def _transfer(w, n):
+    """PI M on the vector of a run: the 4x4 transfer of a wire layer, back to front."""
+    for i in range(n):
+        eps, inv_eps = _get(w, EPS, i), _get(w, INV_EPS, i)
+        c, half = w[KP * C + i] * math.sqrt(w[S2 * C + i]), _get(w, DA, i)
+        xc, yc, dc = _get(w, XC, i), c * _get(w, YC, i), half * _get(w, YC, i)
+        xg, yg, dg = _get(w, XG, i), c * _get(w, YG, i), half * _get(w, YG, i)
+        xw, yw, dw = _get(w, XW, i), c * _get(w, YWW, i), half * _get(w, YWW, i)
+        h, v, e, psi = _get(w, RUN + 10, i), _get(w, RUN + 12, i), _get(w, RUN + 14, i), _get(w, RUN + 16, i)
+        ge, gp, wh, wv = eps * e, eps * psi, inv_eps * h, inv_eps * v
+        _put(w, RUN + 10, i, (xc + dc) * h + yc * v + (xg + dg) * ge + yg * gp)
+        _put(w, RUN + 12, i, (xc - dc) * v + yc * h + (xg - dg) * gp + yg * ge)
+        _put(w, RUN + 14, i, (xc + dc) * e + yc * psi + (xw + dw) * wh + yw * wv)
+        _put(w, RUN + 16, i, (xc - dc) * psi + yc * e + (xw - dw) * wv + yw * wh)
 
 
 @kernel
 def _wire_run(w, n):
-    """A wire layer inside a run: the second compound of its transfer on the plane, the transfer on the vector."""
+    """A wire layer inside a run: the second compound of its transfer, on the plane."""
     for i in range(n):
-        cc, u, a1, a2, b1, b2, v, v_swapped, ed, wd = _minors(w, i)
+        cc, u, a1, a2 = _get(w, CC, i), _get(w, M_HP_HP, i), _get(w, M_HV_HP, i), _get(w, M_HV_EV, i)
+        b1, b2, v, v_swapped = _get(w, M_HP_HV, i), _get(w, M_EV_HV, i), _get(w, M_EV_HP, i), _get(w, M_HP_EV, i)
+        ed, wd = _get(w, M_HV_EP, i), _get(w, M_EP_HV, i)
         c = w[KP * C + i] * math.sqrt(w[S2 * C + i])
         half, d, ckk = _get(w, DA, i), _get(w, D, i), c * _get(w, KK, i)
         plus, minus = half * ckk + 0.5 * c * d, half * ckk - 0.5 * c * d
@@ -359,12 +355,6 @@ def _wire_run(w, n):
         _put(w, RUN + 4, i, b2 * hv + v * hp + u * ev + a1 * ep + 2.0 * minus * he)
         _put(w, RUN + 6, i, wd * hv + b2 * hp + b1 * ev + cc * ep + 2.0 * cyw * he)
         _put(w, RUN + 8, i, (_get(w, PI, i) + 2.0 * c * ckk) * he - cyw * hv - minus * hp + plus * ev + cy * ep)
-        h, e = _get(w, RUN + 10, i), _get(w, RUN + 14, i)
-        h, v, e, psi = _transfer(w, i, h, _get(w, RUN + 12, i), e, _get(w, RUN + 16, i))
-        _put(w, RUN + 10, i, h)
-        _put(w, RUN + 12, i, v)
-        _put(w, RUN + 14, i, e)
-        _put(w, RUN + 16, i, psi)
 
 
 @kernel
@@ -429,10 +419,12 @@ def _rescale(w, i, row, t_row):
 
 
 @kernel
-def _element(w, n, kind, te, tm):
+def _element(w, n, kind, te, tm, normalise):
     """One element of the recipe, back to front."""
     if kind == PLAIN:
         _plain(w, n, te, tm)
+    elif kind == TRANSPARENT:
+        _transparent(w, n, te, tm)
     elif kind == SHEET:
         _sheet(w, n, te, tm)
     elif kind == WIRE_BACK:
@@ -447,21 +439,30 @@ def _element(w, n, kind, te, tm):
         if tm and kind == UNIAXIAL:
             _uniaxial_tm(w, n)
         elif tm:
-            _modes(w, n)
+            if w[IDEAL * C] > 0.0:
+                _ideal_modes(w, n)
+            else:
+                _modes(w, n)
+            _combine(w, n)
+            _combine_transfer(w, n)
+            _mark_rare(w, n)
+            _redo_rare(w, n)
+            _minors(w, n)
             if kind == WIRES:
                 _wires(w, n)
             else:
                 _wire_run(w, n)
-    in_run = kind in (WIRE_BACK, WIRE_RUN, WIRE_JOINT)
-    _normalise(w, n, te, tm and not in_run)
-    if tm and in_run:
+                _transfer(w, n)
+    if kind in (WIRE_BACK, WIRE_RUN, WIRE_JOINT):
         _normalise_run(w, n)
+    elif normalise:
+        _normalise(w, n, te, tm)
 
 
 @kernel
-def _load(w, n, table, f, by_angle):
+def _load(w, n, table, n_rows, f, by_angle):
     """Lay one element's table into the workspace: its column f, or the n columns from f on."""
-    for k in range(table.shape[0]):
+    for k in range(n_rows):
         if by_angle:
             value = table[k, f]
             for i in range(n):
@@ -472,90 +473,37 @@ def _load(w, n, table, f, by_angle):
 
 
 @njit(inline="always")
-def _outgoing(k2, inv_m):
-    """kappa/m of the wave that leaves: it decays, or carries power away where it does not."""
-    kappa, _ = _root(k2)
-    z = kappa * inv_m
-    return complex(_select((k2.imag == 0.0) & (z.real < 0.0), -z.real, z.real), z.imag)
-
-
-@njit(inline="always")
-def _outgoing(k2, inv_m):
-    """kappa/m of the wave that leaves: it decays, or carries power away where it does not."""
-    kappa, _ = _root(k2)
-    z = kappa * inv_m
-    return complex(_select((k2.imag == 0.0) & (z.real < 0.0), -z.real, z.real), z.imag)
-
-
-@kernel
-def _begin(w, n, metal_back):
-    """State behind the last element, from the media (in the rows of the table) and the angles."""
-    back = 0.0 if metal_back else 1.0
-    for i in range(n):
-        index2 = w[FRONT_EPS * C + i] * w[FRONT_MU * C + i]
-        w[S2 * C + i] *= index2
-        w[Q2 * C + i] *= index2
-        eps, mu = _get(w, BACK_EPS, i), _get(w, BACK_MU, i)
-        k2 = eps * mu - index2 + w[Q2 * C + i]
-        _put(w, TE, i, complex(back, 0.0))
-        _put(w, TE + 2, i, (1.0 - back) + back * _outgoing(k2, _inverse(mu)))
-        _put(w, TE + 4, i, complex(back, 0.0))
-        _put(w, TM, i, complex(1.0, 0.0))
-        _put(w, TM + 2, i, back * _outgoing(k2, _inverse(eps)))
-        _put(w, TM + 4, i, complex(back, 0.0))
-
-
-@kernel
-def _end(w, n):
-    """r, t, R, T of both polarizations from the state at the front face; t is the ratio of the field a."""
-    for i in range(n):
-        eps, mu = w[FRONT_EPS * C + i], w[FRONT_MU * C + i]
-        q2 = w[Q2 * C + i]
-        q = math.sqrt(q2)
-        eps_back, mu_back = _get(w, BACK_EPS, i), _get(w, BACK_MU, i)
-        k2 = eps_back * mu_back - eps * mu + q2
-        _finish(w, i, TE, q / mu, _outgoing(k2, _inverse(mu_back)).real, RESULT)
-        _finish(w, i, TM, q / eps, _outgoing(k2, _inverse(eps_back)).real, RESULT + N_OUT)
-
-
-@njit(inline="always")
-def _finish(w, i, row, z_front, z_back, result):
-    a, b, t = _get(w, row, i), _get(w, row + 2, i), _get(w, row + 4, i)
-    inv = _inverse(z_front * a + b)
-    r = (z_front * a - b) * inv
-    t = 2.0 * z_front * t * inv
-    _put(w, result + R_RE, i, r)
-    _put(w, result + T_RE, i, t)
-    w[(result + R_POWER) * C + i] = r.real * r.real + r.imag * r.imag
-    w[(result + T_POWER) * C + i] = (t.real * t.real + t.imag * t.imag) * z_back / z_front
+def _copy(w, target):
+    for k in range(w.size):
+        target[k] = w[k]
 
 
 @kernel
 def _chunk(w, n, kinds, rows, tables, media, at, by_angle, switches, trace):
     """Solve the n points whose sin^2 and cos^2 stand in the workspace, from column `at` of the tables on.
 
-    If `trace` has room, the workspace after `_begin` and after each element goes there; the transmission
+    If `trace` has room, the workspace after `begin` and after each element goes there; the transmission
     then restarts at 1 in every element.
     """
     metal_back, te, tm = switches[0], switches[1], switches[2]
-    _load(w, n, media, at, by_angle)
-    _begin(w, n, metal_back)
+    _load(w, n, media, N_MEDIA, at, by_angle)
+    begin(w, n, metal_back)
     for e in range(kinds.size):
         if trace.shape[0] > 0:
-            trace[e] = w
+            _copy(w, trace[e])
             for i in range(n):
                 _put(w, TE + 4, i, 1.0 + 0.0j)
                 _put(w, TM + 4, i, 1.0 + 0.0j)
-        _load(w, n, tables[rows[e]], at, by_angle)
-        _element(w, n, kinds[e], te, tm)
+        _load(w, n, tables[rows[e]], PLAIN_ROWS if kinds[e] <= TRANSPARENT else N_PARAMS, at, by_angle)
+        _element(w, n, kinds[e], te, tm, e % 8 == 7 or e == kinds.size - 1 or trace.shape[0] > 0)
     if trace.shape[0] > 0:
-        trace[kinds.size] = w
-    _load(w, n, media, at, by_angle)
-    _end(w, n)
+        _copy(w, trace[kinds.size])
+    _load(w, n, media, N_MEDIA, at, by_angle)
+    end(w, n)
 
 
 @njit(nogil=True, cache=True, error_model="numpy")
-def solve(kinds, rows, tables, media, sin2, cos2, switches, out):
+def solve(kinds, rows, tables, media, sin2, cos2, switches, amplitudes, powers):
     """Solve a grid of frequencies and angles.
 
     Parameters
@@ -568,8 +516,10 @@ def solve(kinds, rows, tables, media, sin2, cos2, switches, out):
         Squares of sine and cosine of the angle of incidence in the front medium.
     switches : bool array, shape (3,)
         Back is a perfect conductor; TE wanted; TM wanted.
-    out : float array, shape (2, N_OUT, n_freqs, n_angles)
-        Filled: TE, TM.
+    amplitudes : complex array, shape (n_pol, 2, n_freqs, n_angles)
+        Filled with r, t of the wanted polarizations, TE before TM.
+    powers : float array, shape (n_pol, 3, n_freqs, n_angles)
+        Filled with R, T, A.
     """
     n_freqs, n_angles = media.shape[1], sin2.size
     w = np.zeros(N_ROWS * C)
@@ -583,14 +533,15 @@ def solve(kinds, rows, tables, media, sin2, cos2, switches, out):
                 a = i0 + i if by_angle else o
                 w[S2 * C + i], w[Q2 * C + i] = sin2[a], cos2[a]
             _chunk(w, n, kinds, rows, tables, media, o if by_angle else i0, by_angle, switches, nothing)
-            for p in range(2):
-                for k in range(N_OUT):
-                    row = (RESULT + p * N_OUT + k) * C
-                    for i in range(n):
-                        if by_angle:
-                            out[p, k, o, i0 + i] = w[row + i]
-                        else:
-                            out[p, k, i0 + i, o] = w[row + i]
+            for p in range(powers.shape[0]):
+                result = RESULT if switches[1] and p == 0 else RESULT + N_OUT
+                for i in range(n):
+                    f, a = (o, i0 + i) if by_angle else (i0 + i, o)
+                    amplitudes[p, 0, f, a] = _get(w, result + R_AMPLITUDE, i)
+                    amplitudes[p, 1, f, a] = _get(w, result + T_AMPLITUDE, i)
+                    powers[p, 0, f, a] = w[(result + R_POWER) * C + i]
+                    powers[p, 1, f, a] = w[(result + T_POWER) * C + i]
+                    powers[p, 2, f, a] = w[(result + A_POWER) * C + i]
 
 
 @njit(nogil=True, cache=True, error_model="numpy")

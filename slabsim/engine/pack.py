@@ -146,8 +146,10 @@ class _Packer:
         media = np.zeros((rows.N_MEDIA, self.frequencies.size))
         media[rows.FRONT_EPS], media[rows.FRONT_MU] = self.front_eps, self.front_mu
         back = self.stack.back if self.stack.back is not None else self.stack.front
-        _set(media, rows.BACK_EPS, back.permittivity(self.frequencies))
-        _set(media, rows.BACK_MU, back.permeability(self.frequencies))
+        eps, mu = back.permittivity(self.frequencies), back.permeability(self.frequencies)
+        _set(media, rows.BACK_EPS, eps)
+        _set(media, rows.BACK_MU, mu)
+        _set(media, rows.E_OVER_H, np.sqrt(self.front_eps / self.front_mu) / np.sqrt(eps / mu))
         empty = np.zeros((0, rows.N_PARAMS, self.frequencies.size))
         return Recipe(
             kinds=np.array(self.kinds, dtype=np.int64),
@@ -162,6 +164,10 @@ class _Packer:
         """A layer without wires."""
         key = ("plain", layer.material, layer.thickness)
         self._add(position, rows.PLAIN, key, lambda table: self._medium(table, layer))
+        table = self.tables[self.rows[-1]]
+        losses = table[[rows.EPS + 1, rows.MU + 1]]
+        if not losses.any() and np.all(table[rows.EXCESS] >= 0.0):
+            self.kinds[-1] = rows.TRANSPARENT
 
     def uniaxial(self, position: int, layer: Layer, wires: WireSet) -> None:
         """Wires in the local model: eps_zz = eps + i/(k0 xi)."""
@@ -260,7 +266,18 @@ class _Packer:
         zc = 1j * zeta * kp**2 / self.k0
         _set(table, rows.ZC, zc)
         _set(table, rows.X_WIRE, (kp / self.k0) ** 2 - eps * zc)
+        if wires.metal is None and not layer.material.is_magnetic:
+            self._set_tem(table, eps)
         return kp
+
+    def _set_tem(self, table: np.ndarray, eps: np.ndarray) -> None:
+        """p, c, g of the TEM mode, as `vector_math.wave` defines them."""
+        kappa = np.sqrt(eps)
+        twice = 2j * kappa * table[rows.DEPTH]
+        _set(table, rows.TEM, np.exp(0.5 * twice))
+        _set(table, rows.TEM + 2, 0.5 * (1.0 + np.exp(twice)))
+        _set(table, rows.TEM + 4, -np.expm1(twice) / (2.0 * kappa))
+        table[rows.IDEAL] = 1.0
 
     def _end(self, kp: float, wires: WireSet, end: WireEnd, side: float) -> tuple[np.ndarray, np.ndarray]:
         """(nu, omega) of an end: (v, psi) there is a multiple of it. `side`: -1 front, +1 back."""

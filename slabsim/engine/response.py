@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from slabsim.engine import kernels, rows
+from slabsim.engine import kernels
 from slabsim.engine.pack import Recipe, pack
 from slabsim.errors import InputError
 from slabsim.stack.sample import Model, Polarization, Stack
@@ -90,19 +90,17 @@ class Solver:
 
     def _respond(self, recipe: Recipe, sin2: np.ndarray, cos2: np.ndarray) -> Response:
         wanted = np.array([recipe.metal_back, "TE" in self.polarizations, "TM" in self.polarizations])
-        out = np.full((2, rows.N_OUT, recipe.media.shape[1], sin2.size), np.nan)
-        kernels.solve(recipe.kinds, recipe.rows, recipe.tables, recipe.media, sin2, cos2, wanted, out)
-        out = out[[("TE", "TM").index(name) for name in self.polarizations]]
-        r = out[:, rows.R_RE] + 1j * out[:, rows.R_IM]
-        R = out[:, rows.R_POWER]
+        shape = (recipe.media.shape[1], sin2.size)
+        amplitudes = np.empty((len(self.polarizations), 2, *shape), dtype=complex)
+        powers = np.empty((len(self.polarizations), 3, *shape))
+        recipe_arrays = recipe.kinds, recipe.rows, recipe.tables, recipe.media
+        kernels.solve(*recipe_arrays, sin2, cos2, wanted, amplitudes, powers)
+        if self.polarizations == ("TM", "TE"):  # the kernel's order is TE, TM
+            amplitudes, powers = amplitudes[::-1], powers[::-1]
+        r, R, A = amplitudes[:, 0], powers[:, 0], powers[:, 2]
         if recipe.metal_back:
-            return Response(self.polarizations, r, None, R, None, 1.0 - R)
-        T = out[:, rows.T_POWER]
-        t = out[:, rows.T_RE] + 1j * out[:, rows.T_IM]
-        for index, polarization in enumerate(self.polarizations):
-            if polarization == "TM":
-                t[index] *= _magnetic_to_electric(recipe.media)[:, None]
-        return Response(self.polarizations, r, t, R, T, 1.0 - R - T)
+            return Response(self.polarizations, r, None, R, None, A)
+        return Response(self.polarizations, r, amplitudes[:, 1], R, powers[:, 1], A)
 
 
 def check_grid(frequencies: np.ndarray | float, angles_deg: np.ndarray | float) -> tuple[np.ndarray, np.ndarray]:
@@ -119,11 +117,3 @@ def check_grid(frequencies: np.ndarray | float, angles_deg: np.ndarray | float) 
 def squares(angles_deg: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
     """sin^2 and cos^2 of angles [degrees]; the cosine from 90 - angle, to keep its digits at grazing."""
     return np.sin(np.deg2rad(angles_deg)) ** 2, np.sin(np.deg2rad(90.0 - angles_deg)) ** 2
-
-
-def _magnetic_to_electric(media: np.ndarray) -> np.ndarray:
-    """Factor from t of the magnetic field to t of the electric field, shape (n_freqs,)."""
-    eps = media[rows.BACK_EPS] + 1j * media[rows.BACK_EPS + 1]
-    mu = media[rows.BACK_MU] + 1j * media[rows.BACK_MU + 1]
-    front = np.sqrt(media[rows.FRONT_EPS] / media[rows.FRONT_MU])
-    return front / np.sqrt(eps / mu)

@@ -121,15 +121,16 @@ def sincos(x):
 
 @njit(inline="always")
 def root(z):
-    """Square root with Im >= 0 (the decaying wave), and |z|; never exactly zero."""
+    """Square root with Im >= 0 (the decaying wave), and 1/|z|; z is kept off zero by 1e-140."""
     a = z.real + TINY
     b = z.imag
     size = math.sqrt(a * a + b * b)
     u = math.sqrt(0.5 * (size + abs(a)))
-    v = 0.5 * abs(b) / u
+    w = 1.0 / (u * size)  # one division for both quotients
+    v = 0.5 * abs(b) * (w * size)
     re = select(a >= 0.0, u, v)
     im = select(a >= 0.0, v, u)
-    return complex(select(b >= 0.0, re, -re), im), size
+    return complex(select(b >= 0.0, re, -re), im), w * u
 
 
 @njit(inline="always")
@@ -140,15 +141,13 @@ def inverse(z):
 
 
 @njit(inline="always")
-def wave(k2, depth):
-    """One mode over a layer: p = exp(i phi), c = (1 + p^2)/2, g = (1 - p^2)/(2 kappa), phi = kappa depth.
+def wave(kappa, inv_size, em1, sn, cs):
+    """One mode over a layer: p = exp(i phi), c = (1 + p^2)/2, g = (1 - p^2)/(2 kappa), phi = kappa d = x + i y.
 
+    `inv_size` is 1/|kappa|^2; `em1` = exp(-y) - 1; `sn`, `cs` = sin x, cos x. The form
     (1 - p^2)/2 = (1 - exp(-2y))/2 + exp(-2y) sin x (sin x - i cos x) keeps its digits as kappa -> 0.
     """
-    kappa, size = root(k2)
-    em1 = expm1(-kappa.imag * depth)
-    sn, cs = sincos(kappa.real * depth)
     e = em1 + 1.0
     e2s = e * e * sn
     u = complex(e2s * sn - 0.5 * em1 * (em1 + 2.0), -e2s * cs)
-    return complex(e * cs, e * sn), 1.0 - u, u * complex(kappa.real, -kappa.imag) * (1.0 / size)
+    return complex(e * cs, e * sn), 1.0 - u, u * complex(kappa.real * inv_size, -kappa.imag * inv_size)

@@ -1,7 +1,7 @@
 """Maps and their cuts as figures; nothing is computed here.
 
 Maps use one perceptually even colour scale that also reads in grey and to colour-blind eyes; cuts differ in dash and
-grey value and carry their angle at the line.
+grey value.
 """
 
 from __future__ import annotations
@@ -20,7 +20,7 @@ Panels = Sequence[tuple[str, np.ndarray]]
 SUFFIXES = (".png", ".svg", ".pdf")
 _SCALE = "cividis"
 _DASHES = ("solid", (0, (6, 2)), (0, (2, 1.5)), (0, (6, 2, 1.5, 2)), (0, (1, 1)), (0, (9, 3)))
-_GREYS = ("0.0", "0.15", "0.3", "0.4", "0.5", "0.55")
+_GREYS = ("0.0", "0.15", "0.3", "0.4", "0.5")  # one fewer than dashes: 30 pairs
 
 
 def map_figure(
@@ -35,6 +35,8 @@ def map_figure(
     contour: float | None = None,
 ) -> None:
     """Draw heat maps over frequency and angle, one per panel, with line cuts below.
+
+    A single angle gives one line over frequency and no map, a single frequency one line over angle.
 
     Parameters
     ----------
@@ -59,15 +61,15 @@ def map_figure(
     Raises
     ------
     InputError
-        If the suffix is none of .png, .svg, .pdf, or the values are all NaN.
+        If the suffix is none of .png, .svg, .pdf, the values are all NaN, or a cut lies outside the angles.
     SlabsimError
         If matplotlib is missing or the file cannot be written.
     """
     path = Path(path)
-    if path.suffix.lower() not in SUFFIXES:
-        raise InputError(f"{path}: a figure's name must end in {', '.join(SUFFIXES)}")
+    check_suffix(path)
     if not any(np.any(np.isfinite(values)) for _, values in panels):
         raise InputError(f"{title}: no finished points to draw yet")
+    indices = _cut_indices(angles_deg, cut_angles_deg)
     plt = _pyplot()
     x = from_hz(frequencies, unit)
     has_map = angles_deg.size > 1 and frequencies.size > 1
@@ -84,10 +86,26 @@ def map_figure(
         _draw_maps(figure, axes[0], x, angles_deg, panels, label, contour)
     top = _top(panels)
     for axis, (name, values) in zip(axes[-1], panels, strict=True):
-        _draw_cuts(axis, x, angles_deg, values, _cut_indices(angles_deg, cut_angles_deg))
-        axis.set(title="" if has_map else name, xlabel=f"{_axis_name(unit)} ({unit})", ylim=(-0.02 * top, 1.05 * top))
+        if frequencies.size > 1:
+            _draw_cuts(axis, x, angles_deg, values, indices)
+            axis.set_xlabel(f"{_axis_name(unit)} ({unit})")
+        else:
+            axis.plot(angles_deg, values[0], "-o", color="0.0", markersize=3.0, label=f"{x[0]:g} {unit}")
+            axis.set_xlabel("angle of incidence (deg)")
+        axis.legend(fontsize="small", handlelength=3.2)
+        axis.set(title="" if has_map else name, ylim=(-0.02 * top, 1.05 * top))
         axis.grid(alpha=0.3)
     axes[-1][0].set_ylabel(label)
+    _save(plt, figure, path)
+
+
+def check_suffix(path: Path) -> None:
+    """Raise `InputError` unless the name is one of a figure."""
+    if path.suffix.lower() not in SUFFIXES:
+        raise InputError(f"{path}: a figure's name must end in {', '.join(SUFFIXES)}")
+
+
+def _save(plt: Any, figure: Any, path: Path) -> None:
     try:
         figure.savefig(path, dpi=150)
     except OSError as error:
@@ -116,9 +134,11 @@ def _draw_maps(
         image = axis.pcolormesh(
             x, angles_deg, values.T, cmap=_SCALE, vmin=0.0, vmax=top, shading="nearest", rasterized=True
         )
+        # cells at the border reach beyond the data, below 0 deg for one
+        axis.set(title=name, xlim=(x.min(), x.max()), ylim=(angles_deg[0], angles_deg[-1]))
         if contour is not None and np.nanmin(values) < contour < np.nanmax(values):
             axis.contour(x, angles_deg, values.T, levels=[contour], colors="white", linewidths=1.0)
-        axis.set(title=name)
+            axis.set_title(f"{name}, white line at {contour:g}")
     axes[0].set_ylabel("angle of incidence (deg)")
     figure.colorbar(image, ax=list(axes), label=label)
 
@@ -127,14 +147,17 @@ def _draw_cuts(axis: Any, x: np.ndarray, angles_deg: np.ndarray, values: np.ndar
     for number, index in enumerate(indices):
         dash, grey = _DASHES[number % len(_DASHES)], _GREYS[number % len(_GREYS)]
         axis.plot(x, values[:, index], linestyle=dash, color=grey, linewidth=1.3, label=f"{angles_deg[index]:g} deg")
-    axis.legend(fontsize="small", handlelength=3.2)
 
 
 def _cut_indices(angles_deg: np.ndarray, wanted: Sequence[float] | None) -> list[int]:
     if wanted is None:
         count = min(5, angles_deg.size)
         return sorted({round(i * (angles_deg.size - 1) / max(count - 1, 1)) for i in range(count)})
-    return [int(np.argmin(abs(angles_deg - angle))) for angle in wanted]
+    low, high = angles_deg[0], angles_deg[-1]
+    for angle in wanted:
+        if not low <= angle <= high:  # written so that NaN fails too
+            raise InputError(f"angle = {angle:g} deg; the map has {low:g} to {high:g} deg: choose an angle among these")
+    return sorted({int(np.argmin(abs(angles_deg - angle))) for angle in wanted})
 
 
 def _top(panels: Panels) -> float:

@@ -6,25 +6,25 @@ import csv
 import io
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
+from itertools import groupby
 from math import isnan, log10
+from typing import TypeVar
 
-from rich.box import SIMPLE_HEAD
 from rich.console import Console, Group, RenderableType
-from rich.table import Table
 from rich.text import Text
 
 from slabsim.analyses.comparison import AngleSummary, Comparison, EdgePair
 from slabsim.analyses.description import Description, WireNumbers
 from slabsim.analyses.passbands import SKIRT, Band, BandList
 from slabsim.analyses.tracking import Track
+from slabsim.report.columns import ColumnTable, fact_table
 from slabsim.units import format_frequency, format_length, format_spectral, from_hz, spectral_kind
 
-SAFETY = (
-    "Results describe an ideal model. For protection (laser eyewear, RF exposure) rely on the applicable standards, "
-    "certified measurements and licensed practice."
-)
 _WORDS = {"T": "transmittance", "R": "reflectance", "A": "absorptance"}
 _DIGITS = 7
+_PIPE_WIDTH = 240
+_ROUNDING = 1e-9  # differences below it have no place worth naming
+Item = TypeVar("Item")
 
 
 def band_table(lists: Sequence[BandList], unit: str) -> RenderableType:
@@ -38,18 +38,18 @@ def band_table(lists: Sequence[BandList], unit: str) -> RenderableType:
     """
     quantity = lists[0].quantity if lists else "T"
     loss = "loss dB" if quantity == "T" else "below 1, dB"
-    table = _table([
-        ("pol", "left"), ("angle", "right"), (f"level {quantity}", "right"), (f"lower ({unit})", "right"),
+    table = ColumnTable([
+        ("pol", "left"), ("angle (deg)", "right"), (f"level {quantity}", "right"), (f"lower ({unit})", "right"),
         (f"upper ({unit})", "right"), (f"centre ({unit})", "right"), (f"width ({unit})", "right"), ("width %", "right"),
         ("peak", "right"), (loss, "right"), ("ripple dB", "right"), ("shape", "right"), ("note", "left"),
-    ])  # fmt: skip
+    ], n_keys=2)  # fmt: skip
     for before, found in zip([None, *lists], lists, strict=False):
         if before is not None and before.polarization != found.polarization:
             table.add_section()
         head: tuple[str, ...] = (found.polarization, f"{found.angle_deg:g}", f"{found.level:.4g}")
         if not found.bands:
             table.add_row(*head, *["-"] * 9, f"no band: {quantity} is at most {found.peak:.3g}")
-        for band in found.bands:
+        for band in _ascending(found.bands, unit):
             table.add_row(*head, *_band_cells(band, unit))
             head = ("", "", "")
     notes = [
@@ -65,17 +65,22 @@ def band_table(lists: Sequence[BandList], unit: str) -> RenderableType:
 def shift_table(tracks: Sequence[tuple[str, Track]], unit: str) -> RenderableType:
     """Edges of each band that is seen at several angles, and their shift from its smallest angle.
 
+    Bands without an edge inside the sweep are left out; nothing is printed where no band is left.
+
     Parameters
     ----------
     tracks : sequence of (polarization, Track)
     unit : str
     """
-    table = _table([
-        ("pol", "left"), ("band", "right"), ("angle", "right"), (f"lower ({unit})", "right"), ("shift %", "right"),
-        (f"upper ({unit})", "right"), ("shift %", "right"), ("width change %", "right"),
-    ])  # fmt: skip
-    for number, (polarization, track) in enumerate(tracks, start=1):
-        head = (polarization, str(number))
+    table = ColumnTable([
+        ("pol", "left"), ("band", "right"), ("angle (deg)", "right"), (f"lower ({unit})", "right"),
+        ("shift %", "right"), (f"upper ({unit})", "right"), ("shift %", "right"), ("width change %", "right"),
+    ], n_keys=3)  # fmt: skip
+    shown = [(polarization, track) for polarization, track in tracks if _has_edge(track)]
+    counts: dict[str, int] = {}
+    for polarization, track in shown:
+        counts[polarization] = counts.get(polarization, 0) + 1
+        head = (polarization, str(counts[polarization]))
         first = track.bands[0]
         for angle, band in zip(track.angles_deg, track.bands, strict=True):
             edges = zip(_edges(band, unit), _edges(first, unit), strict=True)
@@ -83,92 +88,125 @@ def shift_table(tracks: Sequence[tuple[str, Track]], unit: str) -> RenderableTyp
             table.add_row(*head, f"{angle:g}", *cells, _width_change(band, first, unit))
             head = ("", "")
         table.add_section()
-    return _titled("Shift of the band edges with angle", table)
+    if not shown:
+        return Group()
+    note = "shift: from the first angle of the band; - where the sweep ends before the edge, here or there."
+    return _titled("Shift of the band edges with angle", Group(table, Text(note), Text()))
 
 
 def comparison_tables(comparison: Comparison, unit: str, most: int = 6) -> RenderableType:
     """Band edges of both models, their differences, the regions where they part, and the verdicts."""
     trusted, other = comparison.models
-    edges = _table([
-        ("pol", "left"), ("angle", "right"), (f"lower {trusted}", "right"), (f"lower {other}", "right"),
+    difference = f"Difference of {comparison.quantity}, {other} minus {trusted}, over the sweep"
+    part = f"they part by more than {comparison.tolerance:g}"
+    verdicts = [Text(f"{polarization}: {sentence}") for polarization, sentence in comparison.verdicts.items()]
+    return Group(
+        _titled(f"Bands in the {trusted} and the {other} model ({unit})", _pair_table(comparison, unit))
+        if comparison.bands
+        else Text(
+            "A single frequency: no bands.\n" if comparison.frequencies.size < 2 else "No band in either model.\n"
+        ),
+        _titled(difference, _difference_table(comparison, unit, most)),
+        _titled(f"Where {part}", _region_table(comparison, unit, most))
+        if comparison.regions
+        else Text(f"Nowhere do {part}.\n"),
+        *verdicts,
+    )
+
+
+def _pair_table(comparison: Comparison, unit: str) -> ColumnTable:
+    trusted, other = comparison.models
+    table = ColumnTable([
+        ("pol", "left"), ("angle (deg)", "right"), (f"lower {trusted}", "right"), (f"lower {other}", "right"),
         ("diff %", "right"), (f"upper {trusted}", "right"), (f"upper {other}", "right"), ("diff %", "right"),
-    ])  # fmt: skip
-    for pair in comparison.bands:
-        edges.add_row(*_pair_cells(pair, unit))
-    parts = _table([
-        ("pol", "left"), ("angle", "right"), ("largest", "right"), (f"at ({unit})", "right"), ("mean", "right"),
-    ])  # fmt: skip
+    ], n_keys=2)  # fmt: skip
+    for _, pairs in groupby(comparison.bands, key=lambda pair: (pair.polarization, pair.angle_deg)):
+        for pair in _ascending(list(pairs), unit):
+            table.add_row(*_pair_cells(pair, unit))
+    return table
+
+
+def _difference_table(comparison: Comparison, unit: str, most: int) -> ColumnTable:
+    table = ColumnTable([
+        ("pol", "left"), ("angle (deg)", "right"), ("largest", "right"), (f"at ({unit})", "right"), ("mean", "right"),
+    ], n_keys=2)  # fmt: skip
     for row in _chosen(comparison, most):
-        parts.add_row(
+        table.add_row(
             row.polarization,
             f"{row.angle_deg:g}",
             f"{row.largest:.3g}",
-            _value(row.largest_at, unit),
+            _value(row.largest_at, unit) if row.largest > _ROUNDING else "-",
             f"{row.mean:.3g}",
         )
-    where = _table([
-        ("pol", "left"), (f"from ({unit})", "right"), ("to", "right"), ("angles", "right"), ("largest", "right"),
+    return table
+
+
+def _region_table(comparison: Comparison, unit: str, most: int) -> ColumnTable:
+    table = ColumnTable([
+        ("pol", "left"), (f"from ({unit})", "right"), ("to", "right"), ("angles (deg)", "right"), ("largest", "right"),
         ("at", "left"), ("share of grid", "right"),
-    ])  # fmt: skip
+    ], n_keys=1)  # fmt: skip
     for region in comparison.regions[:most]:
         low, high = sorted(from_hz(f, unit) for f in region.frequencies)
-        where.add_row(
+        share = f"{100 * region.share:.2f} %" if region.share >= 5e-5 else "< 0.01 %"
+        table.add_row(
             region.polarization,
             f"{low:.{_DIGITS}g}",
             f"{high:.{_DIGITS}g}",
-            f"{region.angles_deg[0]:g} to {region.angles_deg[1]:g}",
+            " to ".join(f"{angle:g}" for angle in dict.fromkeys(region.angles_deg)),
             f"{region.largest:.3g}",
             f"{format_spectral(region.largest_at[0], unit, 6)}, {region.largest_at[1]:g} deg",
-            f"{100 * region.share:.2f} %",
+            share,
         )
     rest = len(comparison.regions) - most
     if rest > 0:
-        where.add_row("", "", "", "", "", f"and {rest} smaller regions", "")
-    difference = f"Difference of {comparison.quantity}, {other} minus {trusted}, over the sweep"
-    shown = [_titled(f"Bands in the {trusted} and the {other} model ({unit})", edges), _titled(difference, parts)]
-    part = f"they part by more than {comparison.tolerance:g}"
-    shown.append(_titled(f"Where {part}", where) if comparison.regions else Text(f"Nowhere do {part}.\n"))
-    verdicts = [Text(f"{polarization}: {sentence}") for polarization, sentence in comparison.verdicts.items()]
-    return Group(*shown, *verdicts)
+        table.add_row("", "", "", "", "", f"and {rest} smaller region{'s' if rest > 1 else ''}", "")
+    return table
 
 
 def description_tables(description: Description, unit: str) -> RenderableType:
     """The stack as read, and the derived numbers of its wires."""
-    stack, (low, high) = description.stack, description.frequencies
+    stack, ends = description.stack, tuple(dict.fromkeys(description.frequencies))
     back = "perfect conductor" if stack.back is None else stack.back.name
-    span = f"{format_spectral(low, unit)} to {format_spectral(high, unit)}"
     sweep = stack.sweep
     lines = [
         Text(stack.title or stack.file_name, style="bold"),
         Text(f"front {stack.front.name}, back {back}"),
         Text(
-            f"sweep {span} in {sweep.frequencies.size} points, {sweep.angles_deg[0]:g} to {sweep.angles_deg[-1]:g} deg "
-            f"in {sweep.angles_deg.size}, {' and '.join(sweep.polarizations)}, {sweep.model} model"
+            f"sweep {_range([format_spectral(f, unit) for f in ends], sweep.frequencies.size)}, "
+            f"angle {_range([f'{angle:g} deg' for angle in sweep.angles_deg[[0, -1]]], sweep.angles_deg.size)}, "
+            f"{' and '.join(sweep.polarizations)}, {sweep.model} model"
         ),
     ]
-    eps_columns = [(f"eps at {format_spectral(end, unit, 4)}", "right") for end in (low, high)]
-    table = _table([
+    eps_columns = [(f"eps at {format_spectral(end, unit, 4)}", "right") for end in ends]
+    table = ColumnTable([
         ("", "left"), ("kind", "left"), ("name", "left"), ("thickness", "right"), ("material", "left"),
         *eps_columns, ("", "left"),
-    ])  # fmt: skip
+    ], n_keys=2)  # fmt: skip
     for row in description.rows:
         thickness = "" if row.thickness is None else format_length(row.thickness)
-        eps = ("", "") if row.eps is None else tuple(_complex(value) for value in row.eps)
+        eps = [""] * len(ends) if row.eps is None else [_complex(v) for v in row.eps[: len(ends)]]
         table.add_row(row.place, row.kind, row.name, thickness, row.material, *eps, row.detail)
     return Group(
         *lines,
         Text(),
         _titled("Stack, front to back", table),
-        *(_wire_block(numbers, unit, (low, high)) for numbers in description.wires),
+        *(_wire_block(numbers, unit, ends) for numbers in description.wires),
     )
 
 
 def show(renderable: RenderableType, console: Console | None = None) -> None:
-    """Print; without a terminal as wide as the content, so that no column is cut."""
+    """Print; into a pipe or a file as wide as the content and without trailing blanks."""
     console = console or Console()
-    if not console.is_terminal:
-        console = Console(width=240, file=console.file)
-    console.print(renderable, soft_wrap=False)
+    if console.is_terminal:
+        console.print(renderable)
+        return
+    wide = Console(width=_PIPE_WIDTH, file=io.StringIO(), color_system=None)
+    with wide.capture() as capture:
+        wide.print(renderable)
+    for line in capture.get().splitlines():
+        print(line.rstrip(), file=console.file)
+    console.file.flush()  # a full disk shows here, not at exit
 
 
 def bands_as_csv(lists: Iterable[BandList]) -> str:
@@ -186,46 +224,63 @@ def bands_as_csv(lists: Iterable[BandList]) -> str:
                 found.level, band.lower, band.upper, band.centre, band.width, band.fractional_width, band.peak,
                 band.peak_frequency, band.insertion_loss_db, band.ripple_db, band.shape_factor,
             )  # fmt: skip
-            text = [f"{number:.15g}" for number in numbers]
+            text = [f"{number + 0.0:.15g}" for number in numbers]  # no -0
             flags = [int(band.cut_below), int(band.cut_above)]
             writer.writerow([found.polarization, f"{found.angle_deg:g}", found.quantity, *text, *flags])
     return out.getvalue()
 
 
-def _wire_block(numbers: WireNumbers, unit: str, ends: tuple[float, float]) -> RenderableType:
-    wires = numbers.wires
-    low, high = (format_spectral(end, unit, 4) for end in ends)
-    pitch = " by ".join(format_length(side) for side in dict.fromkeys(wires.pitch))
-    metal = "perfect conductor" if wires.metal is None else wires.metal.name
-    facts = _table([("", "left"), ("", "left")], header=False)
-    facts.add_row("wires", f"pitch {pitch}, radius {format_length(wires.radius)}, {metal}")
-    facts.add_row("fill fraction", f"{numbers.fill_fraction:.4g}")
-    facts.add_row(
-        "pitch over wavelength in the host",
-        f"{numbers.pitch_over_wavelength:.3g} at {high} (common practice: below 0.1)",
-    )
-    first, last = numbers.thickness_over_wavelength
-    facts.add_row("thickness over wavelength in the host", f"{first:.4g} at {low}, {last:.4g} at {high}")
-    if numbers.skin_depth and numbers.impedance:
-        for word, skin, z in zip((low, high), numbers.skin_depth, numbers.impedance, strict=True):
-            facts.add_row(
-                f"metal at {word}",
-                f"skin depth {format_length(skin, 4)} = {skin / wires.radius:.3g} radii; "
-                f"wire impedance {_complex(z)} ohm/m",
-            )
-    eps = [_complex(value) for value in numbers.local_eps]
-    facts.add_row("local eps along the wires", f"{eps[0]} at {low}, {eps[1]} at {high}")
-    first, last = numbers.tem_loss_db
-    facts.add_row("TEM loss over one pass, host included", f"{first:.4g} dB at {low}, {last:.4g} dB at {high}")
-    plasma = _table(
-        [("plasma formula", "left"), ("kp (rad/m)", "right"), ("plasma frequency in host", "right"), ("", "left")]
+def _wire_block(numbers: WireNumbers, unit: str, ends: tuple[float, ...]) -> RenderableType:
+    plasma = ColumnTable(
+        [("plasma formula", "left"), ("kp (rad/m)", "right"), ("plasma frequency in host", "right"), ("", "left")], 1
     )
     for value in numbers.plasma:
         edge = "-" if isnan(value.frequency) else format_frequency(value.frequency)
         if spectral_kind(unit) != "frequency" and not isnan(value.frequency):
             edge += f" = {format_spectral(value.frequency, unit)}"
         plasma.add_row(value.formula, f"{value.kp:.6g}", edge, "used" if value.is_used else "")
+    facts = fact_table(_wire_facts(numbers, [format_spectral(end, unit, 4) for end in ends]))
     return Group(Text(f'Wires of "{numbers.layer}"', style="bold"), facts, plasma)
+
+
+def _wire_facts(numbers: WireNumbers, ends: list[str]) -> list[tuple[str, str]]:
+    """Name and value of each derived number, at the one or two `ends` of the sweep."""
+    wires = numbers.wires
+    pitch = " by ".join(format_length(side) for side in dict.fromkeys(wires.pitch))
+    metal = "perfect conductor" if wires.metal is None else wires.metal.name
+    facts = [
+        ("wires", f"pitch {pitch}, radius {format_length(wires.radius)}, {metal}"),
+        ("fill fraction", f"{numbers.fill_fraction:.4g}"),
+        (
+            "pitch over wavelength in host",
+            f"{numbers.pitch_over_wavelength:.3g} at {ends[-1]} (common practice: below 0.1)",
+        ),
+        ("thickness over wavelength in host", _at(ends, [f"{v:.4g}" for v in numbers.thickness_over_wavelength])),
+    ]
+    if numbers.skin_depth and numbers.impedance:
+        for end, skin, z in zip(ends, numbers.skin_depth, numbers.impedance, strict=False):
+            depth = f"skin depth {format_length(skin, 4)} = {skin / wires.radius:.3g} radii"
+            facts.append((f"metal at {end}", f"{depth}; wire impedance {_complex(z)} ohm/m"))
+    facts.append(("local eps along the wires", _at(ends, [_complex(value) for value in numbers.local_eps])))
+    facts.append(("TEM loss over one pass, with host", _at(ends, [f"{v:.4g} dB" for v in numbers.tem_loss_db])))
+    return facts
+
+
+def _at(ends: list[str], values: list[str]) -> str:
+    return ", ".join(f"{value} at {end}" for value, end in zip(values, ends, strict=False))
+
+
+def _range(ends: list[str], count: int) -> str:
+    return ends[0] if count == 1 else f"{ends[0]} to {ends[-1]} in {count} points"
+
+
+def _ascending(items: Sequence[Item], unit: str) -> Sequence[Item]:
+    """Items in ascending order of frequency, put in ascending order of their value in `unit`."""
+    return items[::-1] if spectral_kind(unit) == "wavelength" else items
+
+
+def _has_edge(track: Track) -> bool:
+    return any(not (band.cut_below and band.cut_above) for band in track.bands)
 
 
 @dataclass(frozen=True)
@@ -271,7 +326,7 @@ def _band_cells(band: Band, unit: str) -> list[str]:
         f"{width:.5g}",
         f"{100 * width / centre:.4g}",
         f"{band.peak:.4f}" if band.peak > 1e-3 else f"{band.peak:.3g}",
-        f"{max(band.insertion_loss_db, 0.0):.3f}",
+        f"{max(0.0, band.insertion_loss_db):.3f}",
         f"{band.ripple_db:.3f}",
         "-" if isnan(band.shape_factor) else f"{band.shape_factor:.3f}",
         f"{note[lower.is_cut, upper.is_cut]} by the sweep" if _is_cut(band) else "",
@@ -313,10 +368,3 @@ def _complex(value: complex) -> str:
 
 def _titled(title: str, body: RenderableType) -> RenderableType:
     return Group(Text(title, style="bold"), body)
-
-
-def _table(columns: list[tuple[str, str]], header: bool = True) -> Table:
-    table = Table(box=SIMPLE_HEAD, show_header=header)
-    for name, justify in columns:
-        table.add_column(Text(name), justify=justify, no_wrap=True)  # type: ignore[arg-type]
-    return table

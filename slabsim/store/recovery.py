@@ -49,13 +49,6 @@ def is_sound(file: h5py.File, end: int) -> bool:
     return bool(np.all(ends <= end) and np.all(starts[1:] >= ends[:-1]))
 
 
-def _is_compressed(file: h5py.File) -> bool:
-    try:
-        return any(dataset.compression for dataset in block_datasets(file))
-    except (OSError, KeyError, AttributeError):
-        return False
-
-
 def rebuild(path: Path, target: Path, stack: Stack, plan: Plan) -> None:
     """Write a new map to `target` with the finished blocks of the map at `path`; the others are pending."""
     with h5py.File(path, "r") as old:
@@ -90,6 +83,13 @@ def _chunks(dataset: h5py.Dataset) -> Iterator[h5py.h5d.StoreInfo]:
     found: list[h5py.h5d.StoreInfo] = []
     dataset.id.chunk_iter(found.append)
     return iter(found)
+
+
+def _is_compressed(file: h5py.File) -> bool:
+    try:
+        return any(dataset.compression for dataset in block_datasets(file))
+    except (OSError, KeyError, AttributeError):
+        return False
 
 
 def _copy_block(old: h5py.File, new: h5py.File, place: Place) -> bool:
