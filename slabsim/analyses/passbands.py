@@ -178,7 +178,7 @@ def _bands_of(line: Line, polarization: Polarization, frequencies: np.ndarray, l
     absolute = level.absolute(peak)
     skirt = SKIRT * absolute
     bands: list[Band] = []
-    if peak > absolute > 0.0:
+    if peak > absolute and peak > line.noise:
         runs = _runs(power >= absolute)
         edges = _crossings(line, f, power, absolute)
         skirts = _crossings(line, f, power, skirt)

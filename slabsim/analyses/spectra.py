@@ -45,6 +45,11 @@ class Line:
     angle_deg: float
     quantity: Quantity
 
+    @property
+    def noise(self) -> float:
+        """Power below which the quantity is rounding: A is a difference of numbers near 1, T and R are squares."""
+        return 1e-11 if self.quantity == "A" else 1e-290
+
     def power(self, frequencies: np.ndarray) -> np.ndarray:
         """The quantity at `frequencies` [Hz], any shape and order."""
         return self._solve(frequencies, self.quantity)
@@ -84,7 +89,7 @@ def fine_spectrum(line: Line, frequencies: np.ndarray) -> tuple[np.ndarray, np.n
         where = np.flatnonzero(fresh & (np.diff(f) > _FINEST * f[1:]))
         middle = 0.5 * (f[where] + f[where + 1])
         value = line.power(middle)
-        bent = abs(value - 0.5 * (power[where] + power[where + 1])) > _STRAIGHT * max(power.max(), 1e-300)
+        bent = abs(value - 0.5 * (power[where] + power[where + 1])) > _STRAIGHT * max(power.max(), line.noise)
         where, middle, value = where[bent], middle[bent], value[bent]
         f, power = np.insert(f, where + 1, middle), np.insert(power, where + 1, value)
         fresh = np.zeros(f.size - 1, dtype=bool)

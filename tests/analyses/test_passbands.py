@@ -6,7 +6,7 @@ from numpy.testing import assert_allclose
 from slabsim.analyses.passbands import Level, _bands_of, find_bands, read_level
 from slabsim.errors import InputError
 from slabsim.stack.sample import Layer
-from tests.engine.twins import medium, reference, stack, wires
+from tests.engine.twins import GROUNDED, medium, reference, stack, wires
 
 C0 = 299_792_458
 
@@ -16,7 +16,7 @@ class Shape:
 
     def __init__(self, amplitude):
         self.amplitude = amplitude
-        self.angle_deg, self.quantity = 0.0, "T"
+        self.angle_deg, self.quantity, self.noise = 0.0, "T", 0.0
 
     def power(self, f):
         return abs(self.amplitude(np.asarray(f))) ** 2
@@ -118,6 +118,14 @@ def test_a_metal_backed_stack_is_judged_by_its_absorption_and_refuses_transmissi
     assert {found.quantity for found in find_bands(film)} == {"A"}
     with pytest.raises(InputError, match="nothing is transmitted into a perfect conductor; ask for R or A"):
         find_bands(film, quantity="T")
+
+
+def test_the_rounding_of_a_lossless_absorptance_is_no_band():
+    held = Layer("wires", medium(1.07), 4e-3, wires(2e-3, 50e-6, back=GROUNDED))
+    lossless = stack(held, back=None, frequencies=np.linspace(20e9, 60e9, 41))
+    for found in find_bands(lossless, [20.0]):
+        assert found.bands == ()
+        assert found.peak < 1e-11
 
 
 def test_one_frequency_is_no_spectrum():
