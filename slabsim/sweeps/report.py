@@ -110,8 +110,7 @@ class SweepReport:
             lines += [f"  {point}" for point in self.missing]
             lines += ["  ..."] if self.n_missing > len(self.missing) else []
         if self.failed:
-            lines.append(
-                f"{len(self.failed)} block{'s' * (len(self.failed) > 1)} failed; try them again with: {self.resume_command}"
-            )
+            blocks = "1 block" if len(self.failed) == 1 else f"{len(self.failed)} blocks"
+            lines.append(f"{blocks} failed; try again with: {self.resume_command}")
             lines += [f"  {block}" for block in self.failed[:LISTED]]
         return "\n".join(lines)

@@ -145,7 +145,7 @@ def test_a_block_that_cannot_be_solved_is_flagged_and_tried_again_later(path, er
     report = run_sweep(stack, path, Spoiler(stack, 2, raise_error(error)), plan=demo_plan(stack))
     assert not report.is_complete
     assert [block.index for block in report.failed] == [1]
-    assert f"1 block failed; try them again with: slabsim sweep STACK --output {path} --resume" in str(report)
+    assert f"1 block failed; try again with: slabsim sweep STACK --output {path} --resume" in str(report)
     assert f"block 1 (5e+09 to 1.77273e+10 Hz, 60 to 80 deg): {type(error).__name__}: {error}" in str(report)
     with open_map(path) as found:
         assert found.block_states == {"pending": 0, "done": 5, "failed": 1}
