@@ -461,15 +461,18 @@ def _element(w, n, kind, te, tm, normalise):
 
 @kernel
 def _load(w, n, table, n_rows, f, by_angle):
-    """Lay one element's table into the workspace: its column f, or the n columns from f on."""
+    """Lay one element's table into the workspace: its column f, or the n columns from f on, the last repeated."""
+    known = min(n, table.shape[1] - f)
     for k in range(n_rows):
         if by_angle:
             value = table[k, f]
             for i in range(n):
                 w[k * C + i] = value
         else:
-            for i in range(n):
+            for i in range(known):
                 w[k * C + i] = table[k, f + i]
+            for i in range(known, n):
+                w[k * C + i] = table[k, f + known - 1]
 
 
 @njit(inline="always")
@@ -529,10 +532,11 @@ def solve(kinds, rows, tables, media, sin2, cos2, switches, amplitudes, powers):
     for o in range(outer):
         for i0 in range(0, inner, C):
             n = min(C, inner - i0)
-            for i in range(n):
-                a = i0 + i if by_angle else o
+            lanes = (n + LANES - 1) // LANES * LANES  # the last point fills up the last vector
+            for i in range(lanes):
+                a = min(i0 + i, n_angles - 1) if by_angle else o
                 w[S2 * C + i], w[Q2 * C + i] = sin2[a], cos2[a]
-            _chunk(w, n, kinds, rows, tables, media, o if by_angle else i0, by_angle, switches, nothing)
+            _chunk(w, lanes, kinds, rows, tables, media, o if by_angle else i0, by_angle, switches, nothing)
             for p in range(powers.shape[0]):
                 result = RESULT if switches[1] and p == 0 else RESULT + N_OUT
                 for i in range(n):

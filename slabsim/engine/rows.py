@@ -3,6 +3,7 @@
 Shared by `pack.py`, which fills the tables, `kernels.py`, which computes, and `fields.py`, which reads the workspace.
 """
 
+LANES = 8  # points per vector instruction, at most
 C = 64  # points per chunk: its rows stay in the first-level cache
 
 # Kinds of element in a recipe
