@@ -60,7 +60,7 @@ def sweep(
     replace: Replace = False,
     compress: Annotated[bool, typer.Option("--compress", help="Smaller and much slower.")] = False,
 ) -> None:
-    """Compute a stack over its frequencies and angles into a map file."""
+    """Compute the sweep of a stack into a map file."""
     from time import perf_counter
 
     from slabsim.cli.progress import announce_compilation, bar
@@ -94,7 +94,10 @@ def passbands(
     model: Annotated[str | None, typer.Option(help="nonlocal or local. Default: that of the source.")] = None,
     csv: Annotated[Path | None, typer.Option(help="Also write the bands to this file, in SI units.")] = None,
 ) -> None:
-    """Print every pass band per polarization and angle, and how its edges shift with angle."""
+    """Print the pass bands per polarization and angle.
+
+    Every band where the power exceeds a level, and how its edges shift with angle.
+    """
     from slabsim import api
     from slabsim.cli.progress import announce_compilation
     from slabsim.report import tables
@@ -132,7 +135,9 @@ def compare(
     figure: Annotated[Path | None, typer.Option(help="Figure of the differences, .png, .svg or .pdf.")] = None,
     replace: Replace = False,
 ) -> None:
-    """Run the local and the nonlocal model of the wires, and say whether the local one can be trusted.
+    """Compare the local with the nonlocal model of the wires.
+
+    Says whether the local one can be trusted.
 
     The differences go into the map if SOURCE is one, else into a new map, NAME_compare.h5; the figure is
     NAME_compare.png unless --figure names it. NAME is that of SOURCE.
@@ -172,7 +177,10 @@ def compare(
 
 @app.command()
 def describe(source: Source) -> None:
-    """Print what was read, with derived numbers: plasma frequency by every formula, skin depth, wire loss."""
+    """Print what was read, with derived numbers.
+
+    Plasma frequency by every formula, pitch over wavelength, skin depth, wire loss.
+    """
     from slabsim import api
     from slabsim.report import tables
 
@@ -191,7 +199,7 @@ def plot(
         list[float] | None, typer.Option("--angle", help="Angle of a line cut; may be given again.")
     ] = None,
 ) -> None:
-    """Draw a map as heat maps over frequency and angle, with line cuts."""
+    """Draw a map as heat maps and line cuts."""
     from slabsim import api
 
     target = output or Path(map_file.stem + ".png")
@@ -203,7 +211,10 @@ def plot(
 def schema(
     output: Annotated[Path | None, typer.Option("--output", "-o", help="File to write. Default: the terminal.")] = None,
 ) -> None:
-    """Print the JSON schema of the stack file, for editors that complete and check."""
+    """Print the JSON schema of the stack file.
+
+    For editors that complete and check.
+    """
     import json
 
     from slabsim.stack.schema import stack_schema
