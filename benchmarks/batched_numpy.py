@@ -35,11 +35,11 @@ def slab(layer: Layer, frequencies: np.ndarray) -> Slab:
     k0 = TWO_PI * frequencies / C0
     eps = layer.material.permittivity(frequencies)
     medium = [values[:, None] for values in (1j * k0 * layer.thickness, eps, 1.0 / eps)]
-    if layer.wires is None:
+    if not layer.wires:
         return Slab(*medium)
-    kp, zeta = wire_constants(layer, layer.wires, frequencies)
+    kp, zeta = wire_constants(layer, layer.wires[0], frequencies)
     kp2 = (kp / k0) ** 2
-    if layer.wires.metal is None:
+    if layer.wires[0].metal is None:
         return Slab(*medium, kp2[:, None])
     return Slab(*medium, kp2[:, None], (kp2 - 1j * eps * zeta * kp**2 / k0)[:, None])
 

@@ -58,7 +58,7 @@ def sample(n_layers: int, kind: str) -> Stack:
         host = Material(f"host {index}", Constant(rng.uniform(1.2, 5.0), 1e-3))
         wires = WireSet((rng.uniform(3e-3, 6e-3),) * 2, rng.uniform(2e-5, 2e-4), metal, (OPEN, OPEN))
         has_wires = kind != "dielectric" and index % 2 == 0
-        layers.append(Layer(f"layer {index}", host, rng.uniform(1e-3, 6e-3), wires if has_wires else None))
+        layers.append(Layer(f"layer {index}", host, rng.uniform(1e-3, 6e-3), (wires,) if has_wires else ()))
     return Stack(kind, VACUUM, VACUUM, tuple(layers), Sweep(FREQUENCIES, ANGLES_DEG, np.zeros(1)))
 
 

@@ -12,7 +12,10 @@ import tempfile
 from functools import cache
 from pathlib import Path
 
-_COMPILED = ("rows.py", "vector_math.py", "coalescing.py", "half_spaces.py", "kernels.py")
+_COMPILED = (
+    *("rows.py", "vector_math.py", "coalescing.py", "half_spaces.py", "kernels.py"),
+    *("port_rows.py", "lanes.py", "matrices.py", "slices.py", "ports.py"),
+)
 
 
 def use_cache_folder() -> Path:

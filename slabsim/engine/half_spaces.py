@@ -13,15 +13,7 @@ kernel = njit(nogil=True, cache=True, error_model="numpy", fastmath=FAST, _nrt=F
 
 
 @njit(inline="always")
-def _outgoing(k2, inv_m):
-    """kappa/m of the wave that leaves: it decays, or carries power away where it does not."""
-    kappa, _ = root(k2)
-    z = kappa * inv_m
-    return complex(select((k2.imag == 0.0) & (z.real < 0.0), -z.real, z.real), z.imag)
-
-
-@njit(inline="always")
-def _outgoing(k2, inv_m):
+def outgoing(k2, inv_m):
     """kappa/m of the wave that leaves: it decays, or carries power away where it does not."""
     kappa, _ = root(k2)
     z = kappa * inv_m
@@ -39,10 +31,10 @@ def begin(w, n, metal_back):
         eps, mu = get(w, BACK_EPS, i), get(w, BACK_MU, i)
         k2 = eps * mu - index2 + w[Q2 * C + i]
         put(w, TE, i, complex(back, 0.0))
-        put(w, TE + 2, i, (1.0 - back) + back * _outgoing(k2, inverse(mu)))
+        put(w, TE + 2, i, (1.0 - back) + back * outgoing(k2, inverse(mu)))
         put(w, TE + 4, i, complex(back, 0.0))
         put(w, TM, i, complex(1.0, 0.0))
-        put(w, TM + 2, i, back * _outgoing(k2, inverse(eps)))
+        put(w, TM + 2, i, back * outgoing(k2, inverse(eps)))
         put(w, TM + 4, i, complex(back, 0.0))
 
 
@@ -56,8 +48,8 @@ def end(w, n):
         eps_back, mu_back = get(w, BACK_EPS, i), get(w, BACK_MU, i)
         k2 = eps_back * mu_back - eps * mu + q2
         one = complex(1.0, 0.0)
-        _finish(w, i, TE, q / mu, _outgoing(k2, inverse(mu_back)).real, one, RESULT)
-        _finish(w, i, TM, q / eps, _outgoing(k2, inverse(eps_back)).real, get(w, E_OVER_H, i), RESULT + N_OUT)
+        _finish(w, i, TE, q / mu, outgoing(k2, inverse(mu_back)).real, one, RESULT)
+        _finish(w, i, TM, q / eps, outgoing(k2, inverse(eps_back)).real, get(w, E_OVER_H, i), RESULT + N_OUT)
 
 
 @njit(inline="always")

@@ -36,7 +36,7 @@ from slabsim.engine.coalescing import rare_modes
 from slabsim.engine.half_spaces import begin, end, kernel
 from slabsim.engine.rows import *
 from slabsim.engine.vector_math import TINY as _TINY
-from slabsim.engine.vector_math import expm1 as _expm1
+from slabsim.engine.vector_math import decay as _decay
 from slabsim.engine.vector_math import inverse as _inverse
 from slabsim.engine.vector_math import root as _root
 from slabsim.engine.vector_math import select as _select
@@ -56,13 +56,15 @@ def _waves(w, n, row):
         _put(w, row + KAPPA, i, kappa)
         w[(row + INV_SIZE) * C + i] = inv_size
     for i in range(n):
-        w[(row + EM1) * C + i] = _expm1(-w[(row + KAPPA + 1) * C + i] * w[DEPTH * C + i])
+        em1, e = _decay(-w[(row + KAPPA + 1) * C + i] * w[DEPTH * C + i])
+        w[(row + EM1) * C + i], w[(row + EXP) * C + i] = em1, e
     for i in range(n):
         sn, cs = _sincos(w[(row + KAPPA) * C + i] * w[DEPTH * C + i])
         w[(row + SIN) * C + i], w[(row + COS) * C + i] = sn, cs
     for i in range(n):
-        em1, sn, cs = w[(row + EM1) * C + i], w[(row + SIN) * C + i], w[(row + COS) * C + i]
-        p, c, g = _wave(_get(w, row + KAPPA, i), w[(row + INV_SIZE) * C + i], em1, sn, cs)
+        em1, e = w[(row + EM1) * C + i], w[(row + EXP) * C + i]
+        sn, cs = w[(row + SIN) * C + i], w[(row + COS) * C + i]
+        p, c, g = _wave(_get(w, row + KAPPA, i), w[(row + INV_SIZE) * C + i], em1, e, sn, cs)
         _put(w, row + WAVE_P, i, p)
         _put(w, row + WAVE_C, i, c)
         _put(w, row + WAVE_G, i, g)
@@ -403,7 +405,6 @@ def _normalise_run(w, n):
         for r in (0, 1, 2, 3, 4, 5, 6, 7, 8, 9):
             size += abs(w[(RUN + r) * C + i])
         scale = 1.0 / size
-        w[SCALE * C + i] = scale
         for r in (0, 1, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11, 12, 13, 14, 15, 16, 17):
             w[(RUN + r) * C + i] *= scale
 
@@ -412,7 +413,6 @@ def _normalise_run(w, n):
 def _rescale(w, i, row, t_row):
     a, b = _get(w, row, i), _get(w, row + 2, i)
     scale = 1.0 / (abs(a.real) + abs(a.imag) + abs(b.real) + abs(b.imag) + 1e-300)
-    w[SCALE * C + i] = scale
     _put(w, row, i, scale * a)
     _put(w, row + 2, i, scale * b)
     _put(w, t_row, i, scale * _get(w, t_row, i))
@@ -475,32 +475,15 @@ def _load(w, n, table, n_rows, f, by_angle):
                 w[k * C + i] = table[k, f + known - 1]
 
 
-@njit(inline="always")
-def _copy(w, target):
-    for k in range(w.size):
-        target[k] = w[k]
-
-
 @kernel
-def _chunk(w, n, kinds, rows, tables, media, at, by_angle, switches, trace):
-    """Solve the n points whose sin^2 and cos^2 stand in the workspace, from column `at` of the tables on.
-
-    If `trace` has room, the workspace after `begin` and after each element goes there; the transmission
-    then restarts at 1 in every element.
-    """
+def _chunk(w, n, kinds, rows, tables, media, at, by_angle, switches):
+    """Solve the n points whose sin^2 and cos^2 stand in the workspace, from column `at` of the tables on."""
     metal_back, te, tm = switches[0], switches[1], switches[2]
     _load(w, n, media, N_MEDIA, at, by_angle)
     begin(w, n, metal_back)
     for e in range(kinds.size):
-        if trace.shape[0] > 0:
-            _copy(w, trace[e])
-            for i in range(n):
-                _put(w, TE + 4, i, 1.0 + 0.0j)
-                _put(w, TM + 4, i, 1.0 + 0.0j)
         _load(w, n, tables[rows[e]], PLAIN_ROWS if kinds[e] <= TRANSPARENT else N_PARAMS, at, by_angle)
-        _element(w, n, kinds[e], te, tm, e % 8 == 7 or e == kinds.size - 1 or trace.shape[0] > 0)
-    if trace.shape[0] > 0:
-        _copy(w, trace[kinds.size])
+        _element(w, n, kinds[e], te, tm, e % 8 == 7 or e == kinds.size - 1)
     _load(w, n, media, N_MEDIA, at, by_angle)
     end(w, n)
 
@@ -526,7 +509,6 @@ def solve(kinds, rows, tables, media, sin2, cos2, switches, amplitudes, powers):
     """
     n_freqs, n_angles = media.shape[1], sin2.size
     w = np.zeros(N_ROWS * C)
-    nothing = np.empty((0, N_ROWS * C))
     by_angle = n_angles >= min(n_freqs, C)  # the longer axis goes through the vector loops
     outer, inner = (n_freqs, n_angles) if by_angle else (n_angles, n_freqs)
     for o in range(outer):
@@ -536,7 +518,7 @@ def solve(kinds, rows, tables, media, sin2, cos2, switches, amplitudes, powers):
             for i in range(lanes):
                 a = min(i0 + i, n_angles - 1) if by_angle else o
                 w[S2 * C + i], w[Q2 * C + i] = sin2[a], cos2[a]
-            _chunk(w, lanes, kinds, rows, tables, media, o if by_angle else i0, by_angle, switches, nothing)
+            _chunk(w, lanes, kinds, rows, tables, media, o if by_angle else i0, by_angle, switches)
             for p in range(powers.shape[0]):
                 result = RESULT if switches[1] and p == 0 else RESULT + N_OUT
                 for i in range(n):
@@ -546,15 +528,3 @@ def solve(kinds, rows, tables, media, sin2, cos2, switches, amplitudes, powers):
                     powers[p, 0, f, a] = w[(result + R_POWER) * C + i]
                     powers[p, 1, f, a] = w[(result + T_POWER) * C + i]
                     powers[p, 2, f, a] = w[(result + A_POWER) * C + i]
-
-
-@njit(nogil=True, cache=True, error_model="numpy")
-def trace(kinds, rows, tables, media, sin2, cos2, switches, states):
-    """Workspace behind and after every element, at one frequency and at most C angles.
-
-    Arrays as in `solve`, with n_freqs = 1; `states`: float array, shape (n_elements + 1, N_ROWS * C).
-    """
-    w = np.zeros(N_ROWS * C)
-    for i in range(sin2.size):
-        w[S2 * C + i], w[Q2 * C + i] = sin2[i], cos2[i]
-    _chunk(w, sin2.size, kinds, rows, tables, media, 0, True, switches, states)

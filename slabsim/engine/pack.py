@@ -12,14 +12,16 @@ import numpy as np
 
 from slabsim.constants import C0, ETA0, TWO_PI
 from slabsim.engine import rows
+from slabsim.engine.wire_numbers import cell_area, load_impedance, local_permittivity, wire_constants
 from slabsim.materials.material import Material
 from slabsim.materials.sheets import film_admittance, patch_admittance, strip_admittance
-from slabsim.materials.wires import internal_impedance, plasma_wavenumber
 from slabsim.stack.sample import (
     Film,
+    Grid,
     Layer,
     Model,
     Patches,
+    Plates,
     SeriesLoad,
     Sheet,
     Stack,
@@ -40,9 +42,6 @@ class Recipe:
     tables : float array, shape (n_tables, N_PARAMS, n_freqs)
     media : float array, shape (N_MEDIA, n_freqs)
         Half-spaces.
-    positions : tuple of int
-        For each kernel element, which entry of ``stack.flatten()`` it belongs to (a run of joined wires
-        takes several kernel elements).
     metal_back : bool
     """
 
@@ -50,7 +49,6 @@ class Recipe:
     rows: np.ndarray
     tables: np.ndarray
     media: np.ndarray
-    positions: tuple[int, ...]
     metal_back: bool
 
 
@@ -79,49 +77,55 @@ def pack(stack: Stack, model: Model, frequencies: np.ndarray) -> Recipe:
     for position in reversed(range(len(elements))):
         element = elements[position]
         if not isinstance(element, Layer):
-            packer.sheet(position, element, *_neighbours(elements, position, stack))
-        elif element.wires is None:
-            packer.plain(position, element)
+            assert not isinstance(element, Plates | Grid)  # `takes_scalar_path` sends those to the four-port engine
+            packer.sheet(element, *neighbours(elements, position, stack))
+        elif not element.wires:
+            packer.plain(element)
         elif model == "local":
-            packer.uniaxial(position, element, element.wires)
+            packer.uniaxial(element, element.wires[0])
         else:
             behind = elements[position + 1] if position + 1 < len(elements) else None
-            packer.wires(position, element, element.wires, behind)
+            packer.wires(element, element.wires[0], behind)
     return packer.recipe()
 
 
-def wire_constants(layer: Layer, wires: WireSet, frequencies: np.ndarray) -> tuple[float, np.ndarray]:
-    """Plasma wavenumber kp [rad/m] of a wire set, and its zeta = Zw area / eta0 [m], shape (n_freqs,)."""
-    kp = plasma_wavenumber(wires.pitch, wires.radius, wires.plasma, layer.material)
-    if wires.metal is None:
-        return kp, np.zeros(frequencies.shape, dtype=complex)
-    metal, host = wires.metal.permittivity(frequencies), layer.material.permittivity(frequencies)
-    area = wires.pitch[0] * wires.pitch[1]
-    return kp, internal_impedance(wires.radius, metal, frequencies, host) * area / ETA0
+def takes_scalar_path(stack: Stack) -> bool:
+    """Whether TE and TM stay apart and the scalar kernels know every element; else the four-port engine solves it."""
+    return all(_is_scalar(element) for element in dict.fromkeys(stack.flatten()))
 
 
-def local_permittivity(layer: Layer, wires: WireSet, frequencies: np.ndarray) -> np.ndarray:
-    """Permittivity along the wires in the local model, eps + i/(k0 xi), complex array of shape (n_freqs,).
-
-    Zero at the plasma edge; where the wires are inductive by themselves that lies below the edge given by kp alone.
-    """
-    k0 = TWO_PI * frequencies / C0
-    kp, zeta = wire_constants(layer, wires, frequencies)
-    return layer.material.permittivity(frequencies) + 1j / (k0 * (zeta - 1j * k0 / kp**2))
+def _is_scalar(element: Layer | Plates | Sheet) -> bool:
+    if isinstance(element, Layer):
+        has_normal_wires = len(element.wires) <= 1 and all(wires.is_normal for wires in element.wires)
+        return element.material.is_isotropic and element.mesh is None and has_normal_wires
+    return not isinstance(element, Plates | Grid)
 
 
-def load_impedance(load: SeriesLoad, frequencies: np.ndarray) -> np.ndarray:
-    """Impedance [ohm] of a series load; time factor exp(-i w t), so an inductance is -i w L."""
-    w = TWO_PI * frequencies
-    z = load.resistance - 1j * w * load.inductance
-    return z if load.capacitance is None else z + 1j / (w * load.capacitance)
-
-
-def _neighbours(elements: tuple[Layer | Sheet, ...], position: int, stack: Stack) -> tuple[Material, Material]:
+def neighbours(elements: tuple[Layer | Plates | Sheet, ...], position: int, stack: Stack) -> tuple[Material, Material]:
     """Materials in front of and behind a sheet; a sheet on a conductor has the front one on both sides."""
-    before = next((e.material for e in reversed(elements[:position]) if isinstance(e, Layer)), stack.front)
-    after = next((e.material for e in elements[position + 1 :] if isinstance(e, Layer)), stack.back)
+    before = next((_medium_of(e) for e in reversed(elements[:position]) if isinstance(e, Layer | Plates)), stack.front)
+    after = next((_medium_of(e) for e in elements[position + 1 :] if isinstance(e, Layer | Plates)), stack.back)
     return before, before if after is None else after
+
+
+def _medium_of(element: Layer | Plates) -> Material:
+    return element.material if isinstance(element, Layer) else element.filling
+
+
+def sheet_admittance(
+    sheet: Patches | Strips | Film, before: Material, after: Material, frequencies: np.ndarray
+) -> tuple[np.ndarray, np.ndarray, int]:
+    """y0 and 1/(2 ee) of a sheet between two media, shape (n_freqs,), and UNIFORM, PATCHES or STRIPS."""
+    k0 = TWO_PI * frequencies / C0
+    eps = before.permittivity(frequencies), after.permittivity(frequencies)
+    if isinstance(sheet, Patches):
+        y0, ee = patch_admittance(sheet.period, sheet.gap, k0, *eps)
+        return y0, 0.5 / ee, rows.PATCHES
+    if isinstance(sheet, Strips):
+        y0, ee = strip_admittance(sheet.period, sheet.width, k0, *eps)
+        return y0, 0.5 / ee, rows.STRIPS
+    y0, ee = _film(sheet, *eps)
+    return y0, 0.5 / ee, rows.UNIFORM
 
 
 @dataclass
@@ -132,7 +136,6 @@ class _Packer:
     frequencies: np.ndarray
     kinds: list[int] = field(default_factory=list)
     rows: list[int] = field(default_factory=list)
-    positions: list[int] = field(default_factory=list)
     tables: list[np.ndarray] = field(default_factory=list)
     known: dict[object, int] = field(default_factory=dict)
 
@@ -156,20 +159,19 @@ class _Packer:
             rows=np.array(self.rows, dtype=np.int64),
             tables=np.stack(self.tables) if self.tables else empty,
             media=media,
-            positions=tuple(self.positions),
             metal_back=self.stack.back is None,
         )
 
-    def plain(self, position: int, layer: Layer) -> None:
+    def plain(self, layer: Layer) -> None:
         """A layer without wires."""
         key = ("plain", layer.material, layer.thickness)
-        self._add(position, rows.PLAIN, key, lambda table: self._medium(table, layer))
+        self._add(rows.PLAIN, key, lambda table: self._medium(table, layer))
         table = self.tables[self.rows[-1]]
         losses = table[[rows.EPS + 1, rows.MU + 1]]
         if not losses.any() and np.all(table[rows.EXCESS] >= 0.0):
             self.kinds[-1] = rows.TRANSPARENT
 
-    def uniaxial(self, position: int, layer: Layer, wires: WireSet) -> None:
+    def uniaxial(self, layer: Layer, wires: WireSet) -> None:
         """Wires in the local model: eps_zz = eps + i/(k0 xi)."""
 
         def fill(table: np.ndarray) -> None:
@@ -178,15 +180,14 @@ class _Packer:
             with np.errstate(divide="ignore", invalid="ignore"):  # at a lossless plasma edge: NaN points
                 _set(table, rows.STRETCH, 1.0 - eps / eps_zz)
 
-        self._add(position, rows.UNIAXIAL, ("uniaxial", layer.material, layer.thickness, wires), fill)
+        self._add(rows.UNIAXIAL, ("uniaxial", layer.material, layer.thickness, wires), fill)
 
-    def wires(self, position: int, layer: Layer, wires: WireSet, behind: Layer | Sheet | None) -> None:
+    def wires(self, layer: Layer, wires: WireSet, behind: Layer | Plates | Sheet | None) -> None:
         """Wires in the nonlocal model: a port of its own, or a member of a run of joined layers."""
         front, back = wires.ends
         key = (layer.material, layer.thickness, wires)
         if front.kind != "joined" and back.kind != "joined":
             self._add(
-                position,
                 rows.WIRES,
                 ("wires", *key),
                 lambda table: self._set_ends(table, wires, self._wire_medium(table, layer, wires)),
@@ -195,52 +196,39 @@ class _Packer:
         kp, _ = wire_constants(layer, wires, self.frequencies)
         if back.kind == "joined":
             assert isinstance(behind, Layer)
-            assert behind.wires is not None
-            neighbour, layer_behind = behind.wires, behind
+            neighbour, layer_behind = behind.wires[0], behind
             joint = ("joint", key, layer_behind.material, neighbour)
             self._add(
-                position,
                 rows.WIRE_JOINT,
                 joint,
                 lambda table: self._set_joint(table, kp, wires, layer_behind, neighbour),
             )
         else:
             self._add(
-                position,
                 rows.WIRE_BACK,
                 ("back", *key),
                 lambda table: self._set_end(table, kp, wires, back, 1.0),
             )
-        self._add(position, rows.WIRE_RUN, ("run", *key), lambda table: self._wire_medium(table, layer, wires))
+        self._add(rows.WIRE_RUN, ("run", *key), lambda table: self._wire_medium(table, layer, wires))
         if front.kind != "joined":
             self._add(
-                position,
                 rows.WIRE_FRONT,
                 ("front", *key),
                 lambda table: self._set_end(table, kp, wires, front, -1.0),
             )
 
-    def sheet(self, position: int, sheet: Sheet, before: Material, after: Material) -> None:
+    def sheet(self, sheet: Patches | Strips | Film, before: Material, after: Material) -> None:
         """A sheet of zero thickness between two media."""
 
         def fill(table: np.ndarray) -> None:
-            eps = before.permittivity(self.frequencies), after.permittivity(self.frequencies)
-            if isinstance(sheet, Patches):
-                y0, ee = patch_admittance(sheet.period, sheet.gap, self.k0, *eps)
-                form = rows.PATCHES
-            elif isinstance(sheet, Strips):
-                y0, ee = strip_admittance(sheet.period, sheet.width, self.k0, *eps)
-                form = rows.STRIPS
-            else:
-                y0, ee = _film(sheet, *eps)
-                form = rows.UNIFORM
+            y0, tilt, form = sheet_admittance(sheet, before, after, self.frequencies)
             _set(table, rows.Y_SHEET, y0)
-            _set(table, rows.TILT, 0.5 / ee)
+            _set(table, rows.TILT, tilt)
             table[rows.FORM] = form
 
-        self._add(position, rows.SHEET, ("sheet", sheet, before, after), fill)
+        self._add(rows.SHEET, ("sheet", sheet, before, after), fill)
 
-    def _add(self, position: int, kind: int, key: object, fill: Callable[[np.ndarray], object]) -> None:
+    def _add(self, kind: int, key: object, fill: Callable[[np.ndarray], object]) -> None:
         if key not in self.known:
             table = np.zeros((rows.N_PARAMS, self.frequencies.size))
             fill(table)
@@ -248,7 +236,6 @@ class _Packer:
             self.tables.append(table)
         self.kinds.append(kind)
         self.rows.append(self.known[key])
-        self.positions.append(position)
 
     def _medium(self, table: np.ndarray, layer: Layer) -> tuple[np.ndarray, np.ndarray]:
         eps = layer.material.permittivity(self.frequencies)
@@ -264,6 +251,8 @@ class _Packer:
         kp, zeta = wire_constants(layer, wires, self.frequencies)
         table[rows.KP2], table[rows.KP] = (kp / self.k0) ** 2, kp / self.k0
         zc = 1j * zeta * kp**2 / self.k0
+        if wires.inductance == "host":  # the inductance mu/kp^2 is that of 1/kp^2 with the rest counted as impedance
+            zc = zc + layer.material.permeability(self.frequencies) - 1.0
         _set(table, rows.ZC, zc)
         _set(table, rows.X_WIRE, (kp / self.k0) ** 2 - eps * zc)
         if wires.metal is None and not layer.material.is_magnetic:
@@ -291,8 +280,7 @@ class _Packer:
         return scale * one, side * scale * y
 
     def _load(self, kp: float, wires: WireSet, load: SeriesLoad) -> np.ndarray:
-        area = wires.pitch[0] * wires.pitch[1]
-        return kp**2 * load_impedance(load, self.frequencies) * area / ETA0
+        return kp**2 * load_impedance(load, self.frequencies) * cell_area(wires) / ETA0
 
     def _set_end(self, table: np.ndarray, kp: float, wires: WireSet, end: WireEnd, side: float) -> None:
         nu, omega = self._end(kp, wires, end, side)

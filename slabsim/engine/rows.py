@@ -1,6 +1,6 @@
 """How a stack lies in the arrays of the kernels: kinds of elements, rows of the tables and of the workspace.
 
-Shared by `pack.py`, which fills the tables, `kernels.py`, which computes, and `fields.py`, which reads the workspace.
+Shared by `pack.py`, which fills the tables, and `kernels.py`, which computes.
 """
 
 LANES = 8  # points per vector instruction, at most
@@ -35,15 +35,15 @@ N_OUT = 7
 S2, Q2 = N_PARAMS, N_PARAMS + 1
 TE, TM = N_PARAMS + 2, N_PARAMS + 8  # a, b, t of each polarization
 RUN = N_PARAMS + 14  # Pluecker: hv, h psi, e v, e psi, h e; then the vector h, v, e, psi
-# Rows of a mode over a layer, counted from FIRST or SECOND: kappa^2, kappa, 1/|kappa|^2, functions of it, p, c, g
-K2, KAPPA, INV_SIZE, EM1, SIN, COS, WAVE_P, WAVE_C, WAVE_G = 0, 2, 4, 5, 6, 7, 8, 10, 12
-FIRST, SECOND = RUN + 18, RUN + 32
-MODES = RUN + 46  # symmetric functions of the two modes of a wire layer
+# Rows of a mode over a layer, counted from FIRST or SECOND: kappa^2, kappa, 1/|kappa|^2, functions, p, c, g, decay
+K2, KAPPA, INV_SIZE, EM1, SIN, COS, WAVE_P, WAVE_C, WAVE_G, EXP = 0, 2, 4, 5, 6, 7, 8, 10, 12, 14
+FIRST, SECOND = RUN + 18, RUN + 33
+MODES = RUN + 48  # symmetric functions of the two modes of a wire layer
 CC, D, H, Y, KK, PI, HW, YW = (MODES + 2 * j for j in range(8))
 XC, YC, XG, YG, XW, YWW = (MODES + 16 + 2 * j for j in range(6))
 MEAN, DA, DET, GAP = (MODES + 28 + 2 * j for j in range(4))
-INV_GAP2, RARE, SCALE = MODES + 36, MODES + 37, MODES + 38  # SCALE: the last normalisation
-MINORS = MODES + 39
+INV_GAP2, RARE = MODES + 36, MODES + 37
+MINORS = MODES + 38
 M_HP_HP, M_HV_HP, M_HV_EV, M_HP_HV, M_EV_HV, M_EV_HP, M_HP_EV, M_HV_EP, M_EP_HV = (MINORS + 2 * j for j in range(9))
 RESULT = MINORS + 18  # TE: N_OUT rows, TM: N_OUT rows
 N_ROWS = RESULT + 2 * N_OUT

@@ -65,8 +65,8 @@ _ROUND = 6755399441055744.0  # 1.5 * 2^52: adding it leaves the nearest integer 
 
 
 @njit(inline="always")
-def expm1(x):
-    """exp(x) - 1 for x <= 0; below -708 it is -1. Taylor to degree 13 on |x| <= ln(2)/2."""
+def decay(x):
+    """exp(x) - 1 and exp(x), x <= 0, each to its last digit; x ends at -708. Taylor to degree 13 on |x| <= ln(2)/2."""
     x = select(x < -708.0, -708.0, x)
     biased = x * 1.4426950408889634 + _ROUND
     n = biased - _ROUND
@@ -86,7 +86,7 @@ def expm1(x):
     p = fma(p, u, 0.5)
     p = fma(p, u, 1.0)
     scale = as_float((as_bits(biased) + 1023) << 52)
-    return fma(p * u, scale, scale - 1.0)
+    return fma(p * u, scale, scale - 1.0), fma(p * u, scale, scale)
 
 
 @njit(inline="always")
@@ -141,13 +141,12 @@ def inverse(z):
 
 
 @njit(inline="always")
-def wave(kappa, inv_size, em1, sn, cs):
+def wave(kappa, inv_size, em1, e, sn, cs):
     """One mode over a layer: p = exp(i phi), c = (1 + p^2)/2, g = (1 - p^2)/(2 kappa), phi = kappa d = x + i y.
 
-    `inv_size` is 1/|kappa|^2; `em1` = exp(-y) - 1; `sn`, `cs` = sin x, cos x. The form
+    `inv_size` is 1/|kappa|^2; `em1`, `e` = exp(-y) - 1, exp(-y); `sn`, `cs` = sin x, cos x. The form
     (1 - p^2)/2 = (1 - exp(-2y))/2 + exp(-2y) sin x (sin x - i cos x) keeps its digits as kappa -> 0.
     """
-    e = em1 + 1.0
     e2s = e * e * sn
     u = complex(e2s * sn - 0.5 * em1 * (em1 + 2.0), -e2s * cs)
     return complex(e * cs, e * sn), 1.0 - u, u * complex(kappa.real * inv_size, -kappa.imag * inv_size)

@@ -4,8 +4,8 @@ A stack is a sequence of elements from front to back:
 
     incident wave -> | layer | sheet | layer | ... | -> back half-space or conductor
 
-An element is a `Layer` (with or without wires), a sheet of zero thickness (`Patches`, `Strips`,
-`Film`), or a `Group` of elements that is repeated. `flatten` writes the groups out.
+An element is a `Layer` (with or without wires), a layer of `Plates`, a sheet of zero thickness (`Patches`,
+`Strips`, `Film`, `Grid`), or a `Group` of elements that is repeated. `flatten` writes the groups out.
 """
 
 from __future__ import annotations
@@ -21,8 +21,13 @@ if TYPE_CHECKING:
 
 Model = Literal["nonlocal", "local"]
 Polarization = Literal["TE", "TM"]
+Channel = Literal["TE", "TM", "TE_to_TM", "TM_to_TE"]
 Stored = Literal["power", "amplitude"]
 PlasmaFormula = Literal["lattice", "logarithmic", "gap"]
+Inductance = Literal["vacuum", "host"]
+Direction = tuple[float, float, float]
+_CROSS: dict[Polarization, Channel] = {"TE": "TE_to_TM", "TM": "TM_to_TE"}
+ALONG_Z: Direction = (0.0, 0.0, 1.0)
 
 
 @dataclass(frozen=True)
@@ -52,7 +57,7 @@ class WireEnd:
 
 @dataclass(frozen=True)
 class WireSet:
-    """Parallel wires along z, one per cell of `pitch[0]` by `pitch[1]`.
+    """Parallel wires, one per cell of `pitch[0]` by `pitch[1]` across the wires.
 
     Parameters
     ----------
@@ -63,9 +68,13 @@ class WireSet:
     metal : Material or None
         None is a perfect conductor.
     ends : tuple of WireEnd
-        Front and back.
+        Front and back; without meaning for wires parallel to the faces.
     plasma : {"lattice", "logarithmic", "gap"} or float
         Formula of the plasma wavenumber, or the plasma frequency in the host [Hz].
+    direction : tuple of float
+        Unit vector along the wires, with a z component >= 0; exactly 0 for wires parallel to the faces.
+    inductance : {"vacuum", "host"}
+        Permeability that the magnetic field around a wire meets.
     """
 
     pitch: tuple[float, float]
@@ -73,16 +82,82 @@ class WireSet:
     metal: Material | None
     ends: tuple[WireEnd, WireEnd]
     plasma: PlasmaFormula | float = "lattice"
+    direction: Direction = ALONG_Z
+    inductance: Inductance = "vacuum"
+
+    @property
+    def is_normal(self) -> bool:
+        """Whether the wires stand at right angles on the faces."""
+        return self.direction == ALONG_Z
+
+    @property
+    def crosses_faces(self) -> bool:
+        """Whether the wires end at the faces, rather than lie parallel to them."""
+        return self.direction[2] > 0.0
+
+
+@dataclass(frozen=True)
+class Mesh:
+    """Three orthogonal sets of wires along x, y and z, joined where they meet.
+
+    Parameters
+    ----------
+    pitch : float
+        Side of the cubic cell [m].
+    radius : float
+        Wire radius [m].
+    metal : Material or None
+        None is a perfect conductor.
+    ends : tuple of WireEnd
+        Of the wires along z, front and back.
+    plasma : {"lattice", "logarithmic", "gap"} or float
+        Of one set, as in `WireSet`.
+    stiffness : float or None
+        l0, the capacitance of the joined sets over that of one; None takes the formula for thin wires.
+    inductance : {"vacuum", "host"}
+    """
+
+    pitch: float
+    radius: float
+    metal: Material | None
+    ends: tuple[WireEnd, WireEnd]
+    plasma: PlasmaFormula | float = "lattice"
+    stiffness: float | None = None
+    inductance: Inductance = "vacuum"
 
 
 @dataclass(frozen=True)
 class Layer:
-    """A homogeneous layer, `thickness` [m], with wires or without."""
+    """A homogeneous layer, `thickness` [m], with sets of wires, with a mesh, or with neither.
+
+    `rotation` [rad] turns the axes of the material, of the wires and of the mesh about z.
+    """
 
     name: str
     material: Material
     thickness: float
-    wires: WireSet | None = None
+    wires: tuple[WireSet, ...] = ()
+    mesh: Mesh | None = None
+    rotation: float = 0.0
+
+    @property
+    def has_wires(self) -> bool:
+        """Whether there are wires of any kind."""
+        return bool(self.wires) or self.mesh is not None
+
+
+@dataclass(frozen=True)
+class Plates:
+    """Thin, perfectly conducting parallel plates at right angles to the faces: `thickness`, `spacing` [m].
+
+    The plates are normal to x or to y; `filling` is the isotropic material between them.
+    """
+
+    name: str
+    thickness: float
+    spacing: float
+    normal: Literal["x", "y"]
+    filling: Material
 
 
 @dataclass(frozen=True)
@@ -116,7 +191,21 @@ class Film:
     thickness: float | None = None
 
 
-Sheet = Patches | Strips | Film
+@dataclass(frozen=True)
+class Grid:
+    """One plane of parallel wires at `pitch` [m], along the unit vector `direction` parallel to the faces.
+
+    `metal` None is a perfect conductor.
+    """
+
+    name: str
+    pitch: float
+    radius: float
+    metal: Material | None
+    direction: Direction
+
+
+Sheet = Patches | Strips | Film | Grid
 
 
 @dataclass(frozen=True)
@@ -127,7 +216,7 @@ class Group:
     elements: tuple[Element, ...]
 
 
-Element = Layer | Patches | Strips | Film | Group
+Element = Layer | Plates | Patches | Strips | Film | Grid | Group
 
 
 @dataclass(frozen=True)
@@ -186,12 +275,32 @@ class Stack:
     file_name: str = "stack.toml"
     tables: dict[str, str] = field(default_factory=dict)
 
-    def flatten(self) -> tuple[Layer | Sheet, ...]:
+    def flatten(self) -> tuple[Layer | Plates | Sheet, ...]:
         """Layers and sheets from front to back, groups written out."""
         return tuple(_walk(self.elements))
 
+    @property
+    def mixes_polarizations(self) -> bool:
+        """Whether TE may turn into TM and back: some element tells one direction parallel to the faces from another."""
+        return any(_tells_directions(element) for element in dict.fromkeys(self.flatten()))
 
-def _walk(elements: tuple[Element, ...]) -> Iterator[Layer | Sheet]:
+    @property
+    def channels(self) -> tuple[Channel, ...]:
+        """What r and t are solved for: the sweep's polarizations, and if the stack mixes them the cross terms."""
+        return self.channels_of(self.sweep.polarizations)
+
+    def channels_of(self, incident: tuple[Polarization, ...]) -> tuple[Channel, ...]:
+        """The same for other incident polarizations."""
+        return (*incident, *(_CROSS[one] for one in incident if self.mixes_polarizations))
+
+
+def _tells_directions(element: Layer | Plates | Sheet) -> bool:
+    if isinstance(element, Layer):
+        return element.material.tells_directions or not all(wires.is_normal for wires in element.wires)
+    return isinstance(element, Grid)  # plates are solved along and across only, where they do not mix
+
+
+def _walk(elements: tuple[Element, ...]) -> Iterator[Layer | Plates | Sheet]:
     for element in elements:
         if isinstance(element, Group):
             for _ in range(element.repeat):

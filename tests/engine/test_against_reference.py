@@ -36,7 +36,7 @@ def booked(stack: Stack, expected) -> np.ndarray:
     """Loss per element of the reference, the loads counted as slabsim does: one in a joint with the layer before it."""
     loss = np.array(expected.absorbed) + [back for _, back in expected.end_loads]
     for i, element in enumerate(stack.flatten()):
-        is_joined = isinstance(element, Layer) and element.wires is not None and element.wires.ends[0].kind == "joined"
+        is_joined = isinstance(element, Layer) and element.wires and element.wires[0].ends[0].kind == "joined"
         loss[i - 1 if is_joined else i] += expected.end_loads[i][0]
     return loss
 
@@ -45,7 +45,7 @@ def test_the_sample_holds_every_kind_of_element_and_end():
     stacks = [draw(seed) for seed in range(N_STACKS)]
     elements = [(e, f) for s, f, _, _ in stacks for e in s.flatten()]
     layers = [(e, f) for e, f in elements if isinstance(e, Layer)]
-    ends = [end for layer, _ in layers if layer.wires for end in layer.wires.ends]
+    ends = [end for layer, _ in layers if layer.wires for end in layer.wires[0].ends]
     depths = [2 * np.pi * f * layer.thickness / 299_792_458 for layer, f in layers]
     counts = {
         "patches": sum(isinstance(e, Patches) for e, _ in elements),
@@ -57,7 +57,7 @@ def test_the_sample_holds_every_kind_of_element_and_end():
         "joined": sum(end.kind == "joined" and end.load is None for end in ends),
         "joined by a load": sum(end.kind == "joined" and end.load is not None for end in ends),
         "metal back": sum(s.back is None for s, *_ in stacks),
-        "real metal": sum(layer.wires is not None and layer.wires.metal is not None for layer, _ in layers),
+        "real metal": sum(layer.has_wires and layer.wires[0].metal is not None for layer, _ in layers),
         "negative host": sum(layer.material.permittivity(f).real < 0 for layer, f in layers),
         "magnetic": sum(layer.material.is_magnetic for layer, _ in layers),
         "thin": sum(depth < 0.01 for depth in depths),

@@ -19,7 +19,7 @@ def wire_layer(eps, kp, depth, zc=0.0, ends=(OPEN, OPEN)) -> Layer:
     fill = np.pi * radius**2 / pitch**2
     metal = medium(eps - kp**2 / (fill * zc), name="metal") if zc else None
     plasma = kp * C0 / (2 * np.pi) / np.sqrt(complex(eps).real)
-    return Layer("wires", medium(eps), depth, WireSet((pitch, pitch), radius, metal, ends, plasma))
+    return Layer("wires", medium(eps), depth, (WireSet((pitch, pitch), radius, metal, ends, plasma),))
 
 
 def error(sample, angle_deg, polarization="TM") -> float:
@@ -77,8 +77,8 @@ def test_coalescing_modes_in_a_run_of_joined_wires(offset, depth):
     s, kp, eps = 0.5, 0.9, 2.0
     zc = np.conj((kp**2 - s**2 - 2j * s * kp * (1 + offset)) / eps)
     whole = wire_layer(eps, kp, depth, zc)
-    first = replace(whole, thickness=0.4 * depth, wires=replace(whole.wires, ends=(OPEN, JOINED)))
-    second = replace(whole, thickness=0.6 * depth, wires=replace(whole.wires, ends=(JOINED, OPEN)))
+    first = replace(whole, thickness=0.4 * depth, wires=(replace(whole.wires[0], ends=(OPEN, JOINED)),))
+    second = replace(whole, thickness=0.6 * depth, wires=(replace(whole.wires[0], ends=(JOINED, OPEN)),))
     assert error(stack(first, second), 30.0) < 1e-11
 
 

@@ -17,8 +17,8 @@ def turned(sample):
     """The stack seen from behind."""
     elements = []
     for element in reversed(sample.elements):
-        if isinstance(element, Layer) and element.wires is not None:
-            element = replace(element, wires=replace(element.wires, ends=element.wires.ends[::-1]))
+        if isinstance(element, Layer):
+            element = replace(element, wires=tuple(replace(one, ends=one.ends[::-1]) for one in element.wires))
         elements.append(element)
     return replace(sample, front=sample.back, back=sample.front, elements=tuple(elements))
 
@@ -66,7 +66,7 @@ def test_cutting_a_wire_layer_into_joined_pieces_changes_nothing(n_pieces):
         replace(
             whole,
             thickness=float(part),
-            wires=replace(whole.wires, ends=(OPEN if i == 0 else JOINED, OPEN if i == n_pieces - 1 else JOINED)),
+            wires=(replace(whole.wires[0], ends=(OPEN if i == 0 else JOINED, OPEN if i == n_pieces - 1 else JOINED)),),
         )
         for i, part in enumerate(parts)
     ]
@@ -79,7 +79,7 @@ def test_cutting_a_wire_layer_into_joined_pieces_changes_nothing(n_pieces):
 def test_vanishing_wires_leave_the_host():
     f, angles = np.linspace(1e9, 10e9, 11), [0.0, 30.0, 80.0]
     faint = WireSet((10e-3, 10e-3), 0.1e-3, None, (OPEN, OPEN), 10.0)  # a plasma frequency of 10 Hz
-    with_wires = Solver(stack(Layer("a", medium(2.0), 20e-3, faint))).solve(f, angles)
+    with_wires = Solver(stack(Layer("a", medium(2.0), 20e-3, (faint,)))).solve(f, angles)
     host = Solver(stack(Layer("a", medium(2.0), 20e-3))).solve(f, angles)
     assert_allclose(with_wires.r, host.r, atol=1e-12)
     assert_allclose(with_wires.t, host.t, atol=1e-12)
@@ -88,7 +88,7 @@ def test_vanishing_wires_leave_the_host():
 def test_te_and_normal_incidence_do_not_see_wires():
     f, angles = np.linspace(1e9, 10e9, 11), [0.0, 30.0, 80.0]
     layer = Layer("a", medium(2.0), 20e-3, wires(10e-3, 0.5e-3))
-    seen, host = Solver(stack(layer)).solve(f, angles), Solver(stack(replace(layer, wires=None))).solve(f, angles)
+    seen, host = Solver(stack(layer)).solve(f, angles), Solver(stack(replace(layer, wires=()))).solve(f, angles)
     assert_allclose(seen.t[0], host.t[0], atol=1e-13)
     assert_allclose(seen.t[1, :, 0], host.t[1, :, 0], atol=1e-12)
     assert_allclose(seen.r[1, :, 0], -seen.r[0, :, 0], atol=1e-12)
@@ -98,7 +98,7 @@ def test_dense_wires_at_their_tem_resonance_pass_every_angle():
     # T -> 1 as 1/kp^2 (derived in closed form: T - 1 = -2.2e-5 at kp = 1e4 /m, 60 deg, d = 100 mm)
     c = 299_792_458
     dense = WireSet((10e-3, 10e-3), 0.1e-3, None, (OPEN, OPEN), 1e4 * c / (2 * np.pi))
-    T = Solver(stack(Layer("a", medium(1.0), 0.1, dense))).solve(c / 0.2, [60.0]).T[1, 0, 0]
+    T = Solver(stack(Layer("a", medium(1.0), 0.1, (dense,)))).solve(c / 0.2, [60.0]).T[1, 0, 0]
     assert pytest.approx(-2.22057e-5, rel=1e-4) == T - 1
 
 

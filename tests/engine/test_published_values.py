@@ -21,7 +21,7 @@ TE, TM = 0, 1
 def w1(thickness=0.1, eps=1.0, ends=(OPEN, OPEN)) -> Layer:
     """Wires of kp = 138 /m exactly, 100 mm unless told otherwise."""
     plasma = 138.0 * C0 / (2 * np.pi) / np.sqrt(eps)
-    return Layer("w1", medium(eps), thickness, WireSet((10e-3, 10e-3), 0.1e-3, None, ends, plasma))
+    return Layer("w1", medium(eps), thickness, (WireSet((10e-3, 10e-3), 0.1e-3, None, ends, plasma),))
 
 
 def solve(sample, frequency, angle_deg, model="nonlocal"):

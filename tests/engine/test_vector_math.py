@@ -9,8 +9,8 @@ from slabsim.engine import vector_math
 
 
 @njit
-def _expm1(x):
-    return vector_math.expm1(x)
+def _decay(x):
+    return vector_math.decay(x)
 
 
 @njit
@@ -28,14 +28,18 @@ def points(low, high, n=400):
     return 10 ** np.random.default_rng(5).uniform(low, high, n)
 
 
-def test_expm1_is_good_to_two_units_in_the_last_place():
+def test_decay_is_good_to_two_units_in_the_last_place():
     for x in -np.concatenate([points(-12, 0), points(0, 2.8), [0.3466, 0.34658, 0.69315]]):
-        assert abs(_expm1(x) / mp.expm1(mp.mpf(x)) - 1) < 2 * 2.3e-16
+        em1, e = _decay(x)
+        assert abs(em1 / mp.expm1(mp.mpf(x)) - 1) < 2 * 2.3e-16
+        assert abs(e / mp.exp(mp.mpf(x)) - 1) < 2 * 2.3e-16
 
 
 @pytest.mark.parametrize("x", [-709.0, -1e4, -1e300])
-def test_expm1_of_deep_decay_is_minus_one(x):
-    assert _expm1(x) == -1.0
+def test_deep_decay_ends_above_zero(x):
+    em1, e = _decay(x)
+    assert em1 == -1.0
+    assert 0.0 < e < 1e-300
 
 
 def test_sine_and_cosine_are_good_to_one_unit_of_one():

@@ -45,10 +45,10 @@ class Fixed:
         return np.full(np.shape(frequency), self.value)
 
 
-def wires(pitch=10e-3, radius=0.5e-3, metal=None, front=OPEN, back=OPEN, plasma="lattice") -> WireSet:
-    """A wire set on a square or rectangular cell."""
+def wires(pitch=10e-3, radius=0.5e-3, metal=None, front=OPEN, back=OPEN, plasma="lattice", **more) -> tuple[WireSet]:
+    """The wires of a layer with one set, on a square or rectangular cell."""
     cell = pitch if isinstance(pitch, tuple) else (pitch, pitch)
-    return WireSet(cell, radius, metal, (front, back), plasma)
+    return (WireSet(cell, radius, metal, (front, back), plasma, **more),)
 
 
 def stack(*elements: Element, front: Material = VACUUM, back: Material | None = VACUUM, **sweep) -> Stack:
@@ -82,7 +82,7 @@ def _element(flat, i: int, sample: Stack, frequency: float, k0, sin_air):
     element = flat[i]
     if isinstance(element, Layer):
         eps, mu = _values(element.material, frequency)
-        array = None if element.wires is None else _array(element.wires, eps, frequency, k0)
+        array = None if not element.wires else _array(element.wires[0], eps, frequency, k0)
         return dense.Slab(eps, mu, element.thickness, array)
     return _sheet(element, *_sides(flat, i, sample, frequency), k0, sin_air)
 
@@ -169,14 +169,14 @@ def _random_medium(rng: np.random.Generator, lossless: bool) -> Material:
 
 def _random_layer(rng: np.random.Generator, wavelength: float, lossless: bool) -> Layer:
     thickness = wavelength * 10 ** rng.uniform(*[(-1.5, 0.3), (-5, -2), (0.3, 1.5)][rng.choice(3, p=[0.75, 0.15, 0.1])])
-    array = None
+    array = ()
     if rng.random() < 0.65:
         pitch = wavelength * 10 ** rng.uniform(-2, -0.3)
         cell = (pitch, pitch) if rng.random() < 0.6 else (pitch, pitch * rng.uniform(0.4, 2.5))
         metal = None if lossless or rng.random() < 0.4 else _random_metal(rng, wavelength)
         formula = str(rng.choice(["lattice", "logarithmic", "gap"]))
         thickness = min(thickness, 300 * pitch)  # decays of up to about exp(-1000)
-        array = WireSet(cell, min(cell) * 10 ** rng.uniform(-3, -0.8), metal, (OPEN, OPEN), formula)
+        array = (WireSet(cell, min(cell) * 10 ** rng.uniform(-3, -0.8), metal, (OPEN, OPEN), formula),)
     return Layer("layer", _random_medium(rng, lossless), thickness, array)
 
 
@@ -193,11 +193,11 @@ def _dress(rng, layers, joints, metal_back, wavelength, lossless):
     ends: list[list[WireEnd]] = [[OPEN, OPEN] for _ in layers]
     sheets_before: list[Element | None] = []
     for i in range(len(layers) + 1):
-        meets = 0 < i < len(layers) and layers[i - 1].wires is not None and layers[i].wires is not None
+        meets = 0 < i < len(layers) and layers[i - 1].has_wires and layers[i].has_wires
         if meets and joints[i - 1]:
-            array = layers[i].wires
-            radius = min(array.radius, 0.15 * min(layers[i - 1].wires.pitch))
-            layers[i] = replace(layers[i], wires=replace(array, pitch=layers[i - 1].wires.pitch, radius=radius))
+            array = layers[i].wires[0]
+            radius = min(array.radius, 0.15 * min(layers[i - 1].wires[0].pitch))
+            layers[i] = replace(layers[i], wires=(replace(array, pitch=layers[i - 1].wires[0].pitch, radius=radius),))
             ends[i - 1][1] = JOINED if rng.random() < 0.7 else WireEnd("joined", _random_load(rng, lossless))
             ends[i][0] = JOINED
             sheets_before.append(None)
@@ -211,8 +211,7 @@ def _dress(rng, layers, joints, metal_back, wavelength, lossless):
     for i, layer in enumerate(layers):
         if sheets_before[i] is not None:
             elements.append(sheets_before[i])
-        array = layer.wires
-        elements.append(layer if array is None else replace(layer, wires=replace(array, ends=tuple(ends[i]))))
+        elements.append(replace(layer, wires=tuple(replace(array, ends=tuple(ends[i])) for array in layer.wires)))
     if sheets_before[-1] is not None:
         elements.append(sheets_before[-1])
     return elements
