@@ -1,6 +1,7 @@
 """From the checked file to the sample: tables become materials, layers and a sweep."""
 
 from collections.abc import Callable
+from math import radians
 
 from slabsim.constants import C0
 from slabsim.materials.dispersion import (
@@ -12,30 +13,34 @@ from slabsim.materials.dispersion import (
     ResonantPermeability,
     Sellmeier,
 )
-from slabsim.materials.material import VACUUM, Material
+from slabsim.materials.material import VACUUM, Axes, Material
 from slabsim.materials.tables import read_table
 from slabsim.stack.document import Document
 from slabsim.stack.file_layers import (
     Entry,
     FilmTable,
+    GridTable,
     GroupTable,
     LayerTable,
-    LoadTable,
     PatchesTable,
+    PlatesTable,
     StripsTable,
-    WireTable,
 )
-from slabsim.stack.file_materials import MaterialTable, ResonanceTable
-from slabsim.stack.file_sweep import SweepTable, angles_deg, frequencies, spectral_unit
+from slabsim.stack.file_materials import ElectricAxesTable, MagneticAxesTable, MaterialTable, ResonanceTable
+from slabsim.stack.file_sweep import SweepTable, angles_deg, degrees, frequencies, spectral_unit
+from slabsim.stack.file_wires import LoadTable, MeshTable, WireTable
 from slabsim.stack.joints import EndKind
 from slabsim.stack.lines import Path
 from slabsim.stack.quantities import CONDUCTOR_NAME, VACUUM_NAME
 from slabsim.stack.sample import (
     Element,
     Film,
+    Grid,
     Group,
     Layer,
+    Mesh,
     Patches,
+    Plates,
     SeriesLoad,
     Stack,
     Strips,
@@ -112,8 +117,11 @@ class _Builder:
     def _element(self, entry: Entry, path: Path) -> Element:
         match entry:
             case LayerTable():
-                wires = self._wires(entry.wires[0], (*path, "wires", 0)) if entry.wires else None
-                return Layer(entry.name, self.materials[entry.material], entry.thickness, wires)
+                return self._layer(entry, path)
+            case PlatesTable():
+                plates = entry.plates
+                filling = self.materials[plates.filling]
+                return Plates(entry.name, entry.thickness, plates.spacing, plates.normal, filling)
             case PatchesTable():
                 return Patches(entry.name, entry.patches.period, entry.patches.gap)
             case StripsTable():
@@ -121,19 +129,50 @@ class _Builder:
             case FilmTable():
                 film = entry.film
                 return Film(entry.name, film.sheet_resistance, film.conductivity, film.thickness)
+            case GridTable():
+                grid = entry.grid
+                return Grid(entry.name, grid.pitch, grid.radius, self.conductor_or(grid.metal), grid.direction)
             case GroupTable():
                 return Group(entry.repeat, self.elements(entry.layers, (*path, "layers")))
 
+    def _layer(self, entry: LayerTable, path: Path) -> Layer:
+        wires = tuple(self._wires(one, (*path, "wires", k)) for k, one in enumerate(entry.wires or []))
+        mesh = None if entry.mesh is None else self._mesh(entry.mesh, (*path, "mesh"))
+        rotation = radians(degrees(entry.rotation))
+        return Layer(entry.name, self.materials[entry.material], entry.thickness, wires, mesh, rotation)
+
     def _wires(self, table: WireTable, path: Path) -> WireSet:
+        return WireSet(
+            pitch=table.cell,
+            radius=table.radius,
+            metal=self.conductor_or(table.metal),
+            ends=self._both_ends(table, path),
+            plasma=table.plasma,
+            direction=table.direction,
+            inductance=table.inductance,
+        )
+
+    def _mesh(self, table: MeshTable, path: Path) -> Mesh:
+        return Mesh(
+            pitch=table.pitch,
+            radius=table.radius,
+            metal=self.conductor_or(table.metal),
+            ends=self._both_ends(table, path),
+            plasma=table.plasma,
+            stiffness=table.stiffness,
+            inductance=table.inductance,
+        )
+
+    def _both_ends(self, table: WireTable | MeshTable, path: Path) -> tuple[WireEnd, WireEnd]:
         front, back = (self._end(end, (*path, "ends", side)) for side, end in enumerate(table.ends))
-        return WireSet(table.cell, table.radius, self.conductor_or(table.metal), (front, back), table.plasma)
+        return front, back
 
     def _end(self, end: str | LoadTable, path: Path) -> WireEnd:
         load = SeriesLoad(end.resistance, end.inductance, end.capacitance) if isinstance(end, LoadTable) else None
-        return WireEnd(self.ends[path], load)
+        return WireEnd(self.ends.get(path, "open"), load)
 
 
-def _electric(table: MaterialTable) -> Constant | Drude | Lorentz | Debye:
+def _electric(table: MaterialTable) -> Constant | Drude | Lorentz | Debye | Axes:
     if table.drude is not None:
         return Drude(table.drude.plasma, table.drude.collision, table.drude.background)
     if table.lorentz is not None:
@@ -142,11 +181,20 @@ def _electric(table: MaterialTable) -> Constant | Drude | Lorentz | Debye:
     if table.debye is not None:
         return Debye(table.debye.static, table.debye.infinity, table.debye.relaxation)
     value = 1.0 if table.permittivity is None else table.permittivity
-    return Constant(value, table.loss_tangent or 0.0, table.conductivity or 0.0)
+    loss = table.loss_tangent or 0.0, table.conductivity or 0.0
+    if isinstance(value, ElectricAxesTable):
+        return Constant(value.xx, *loss), Constant(value.yy, *loss), Constant(value.zz, *loss)
+    return Constant(value, *loss)
 
 
-def _permeability(table: MaterialTable) -> Constant | ResonantPermeability | None:
+def _permeability(table: MaterialTable) -> Constant | ResonantPermeability | Axes | None:
     given = table.permeability
+    if isinstance(given, MagneticAxesTable):
+        return _magnetic(given.xx), _magnetic(given.yy), _magnetic(given.zz)
+    return None if given == 1.0 else _magnetic(given)
+
+
+def _magnetic(given: float | ResonanceTable) -> Constant | ResonantPermeability:
     if isinstance(given, ResonanceTable):
         return ResonantPermeability(given.resonance, given.strength, given.damping)
-    return None if given == 1.0 else Constant(given)
+    return Constant(given)

@@ -1,115 +1,38 @@
-"""Tables `[[layer]]` of a stack file: layers with or without wires, sheets, groups."""
+"""Tables `[[layer]]` of a stack file: layers with or without wires, plates, sheets, groups."""
 
 from typing import Annotated, Any, ClassVar, Literal
 
 from pydantic import Discriminator, Field, Tag, ValidationInfo, field_validator, model_validator
 
+from slabsim.stack.file_sweep import AzimuthAngle
+from slabsim.stack.file_wires import GridData, MeshTable, WireTable
 from slabsim.stack.quantities import (
-    Capacitance,
     FileTable,
     FilmConductivity,
     Host,
-    Inductance,
     Length,
-    Metal,
-    Resistance,
     SheetResistance,
-    Spectral,
     complaint,
-    form_of,
     suggestion,
 )
-from slabsim.units import format_length
+from slabsim.units import Quantity, format_length
 
 MAX_ELEMENTS = 10_000  # layers and sheets, groups written out
 _NAME = Field("", description="Free text; messages and reports use it")
-Shape = Literal["layer", "patches", "strips", "film", "group"]
+Shape = Literal["layer", "plates", "patches", "strips", "film", "grid", "group"]
 _SHAPES: dict[Shape, tuple[str, ...]] = {
-    "layer": ("material", "thickness", "wires"),
+    "layer": ("material", "wires", "mesh", "rotation"),
+    "plates": ("plates",),
     "patches": ("patches",),
     "strips": ("strips",),
     "film": ("film",),
+    "grid": ("grid",),
     "group": ("repeat", "layers"),
 }
 ENTRY_FORMS = (
-    "a layer (material, thickness, and wires if any), a sheet (one of patches, strips, film) "
-    "or a group (repeat, layers)"
+    "a layer (material, thickness, and wires or mesh if any), plates (plates, thickness), a sheet (one of patches, "
+    "strips, film, grid) or a group (repeat, layers)"
 )
-PLASMA_WORDS = ("lattice", "logarithmic", "gap")
-
-
-class LoadTable(FileTable):
-    """Resistance, inductance and capacitance in series at a wire end."""
-
-    tag: ClassVar[str] = "a table"
-    resistance: Resistance = Field(0.0, description='Such as "50 ohm"')
-    inductance: Inductance = Field(0.0, description='Such as "1 nH"')
-    capacitance: Capacitance | None = Field(None, description='Such as "0.1 pF"; left out, it is a short')
-
-    @model_validator(mode="after")
-    def _not_empty(self) -> "LoadTable":
-        if not self.model_fields_set:
-            raise complaint("an empty load; give resistance, inductance or capacitance")
-        return self
-
-
-EndWord = Literal["open", "grounded", "joined"]
-End = Annotated[
-    Annotated[EndWord, Tag("a word")] | Annotated[LoadTable, Tag("a table")],
-    Discriminator(lambda value: "a table" if isinstance(value, dict | LoadTable) else "a word"),
-]
-Pitch = Annotated[
-    Annotated[Length, Tag("one value")] | Annotated[list[Length], Field(min_length=2, max_length=2), Tag("a list")],
-    Discriminator(lambda value: "a list" if form_of(value) == "a list" else "one value"),
-]
-
-
-def _plasma_form(value: Any) -> str:
-    is_quantity = isinstance(value, str) and value.strip()[:1] in tuple("0123456789.+-")
-    return "a quantity" if is_quantity else "a word"
-
-
-Plasma = Annotated[
-    Annotated[Literal["lattice", "logarithmic", "gap"], Tag("a word")] | Annotated[Spectral, Tag("a quantity")],
-    Discriminator(_plasma_form),
-]
-
-
-class WireTable(FileTable):
-    """Parallel wires along z, one for each cell."""
-
-    axis: Literal["z"] = Field("z", description="Direction of the wires: normal to the faces")
-    pitch: Pitch = Field(description='Distance between wires, "2 mm", or the cell\'s sides, ["2 mm", "3 mm"]')
-    radius: Length = Field(description='Wire radius, less than half the pitch, such as "50 um"')
-    metal: Metal = Field(description='A material, or "perfect conductor"')
-    ends: list[End] = Field(
-        ["open", "open"],
-        min_length=2,
-        max_length=2,
-        description='Front and back: "open", "grounded", "joined" or a load { resistance = "50 ohm" }',
-    )
-    plasma: Plasma = Field(
-        "lattice", description='"lattice", "logarithmic", "gap", or the measured plasma edge, "12.3 GHz"'
-    )
-
-    @property
-    def cell(self) -> tuple[float, float]:
-        """Sides of the cell [m]."""
-        return (self.pitch[0], self.pitch[1]) if isinstance(self.pitch, list) else (self.pitch, self.pitch)
-
-    @field_validator("radius")
-    @classmethod
-    def _wires_do_not_touch(cls, value: float, info: ValidationInfo) -> float:
-        pitch = info.data.get("pitch")
-        if pitch is None:
-            return value
-        smaller = min(pitch) if isinstance(pitch, list) else pitch
-        if 2.0 * value >= smaller:
-            raise complaint(
-                f'"{format_length(value)}" with pitch "{format_length(smaller)}": neighbouring wires touch; '
-                f"the radius must be less than {format_length(smaller / 2.0)}"
-            )
-        return value
 
 
 class LayerTable(FileTable):
@@ -119,14 +42,47 @@ class LayerTable(FileTable):
     name: str = _NAME
     material: Host = Field(description='A defined material, or "vacuum"')
     thickness: Length = Field(description='Thickness of the layer, such as "10 mm"')
-    wires: list[WireTable] | None = Field(None, description="The wires in this layer, one [[layer.wires]]")
+    wires: list[WireTable] | None = Field(
+        None, min_length=1, description="The sets of wires in this layer, each a [[layer.wires]]"
+    )
+    mesh: MeshTable | None = Field(None, description='Joined wires, { pitch = "2 mm", radius = "50 um", metal = ... }')
+    rotation: AzimuthAngle = Field(
+        default_factory=lambda: Quantity(0.0, "deg"),
+        description='Turns the axes of material, wires and mesh about z, such as "30 deg"',
+    )
 
-    @field_validator("wires")
-    @classmethod
-    def _one_set(cls, value: list[WireTable] | None) -> list[WireTable] | None:
-        if value is not None and len(value) != 1:
-            raise complaint(f"{len(value)} sets of wires; there must be one set of wires per layer")
-        return value
+    @model_validator(mode="after")
+    def _wires_or_mesh(self) -> "LayerTable":
+        if self.wires and self.mesh:
+            raise complaint("wires and mesh in one layer; a layer has either sets of wires or a mesh")
+        return self
+
+
+class PlatesData(FileTable):
+    """Thin metal plates at right angles to the faces."""
+
+    spacing: Length = Field(description='Distance between plates, such as "4 mm"')
+    normal: Literal["x", "y"] = Field(description='Direction across the plates, "x" or "y"')
+    filling: Host = Field("vacuum", description='Isotropic material between them, "vacuum" by default')
+
+
+class PlatesTable(FileTable):
+    """A layer of metal plates: a waveguide array, one direction of a honeycomb."""
+
+    tag: ClassVar[str] = "plates entry"
+    name: str = _NAME
+    thickness: Length = Field(description='Depth of the plates, at least half their spacing, such as "6 mm"')
+    plates: PlatesData = Field(description='{ spacing = "4 mm", normal = "y", filling = "vacuum" }')
+
+    @model_validator(mode="after")
+    def _edges_apart(self) -> "PlatesTable":
+        if self.thickness < 0.5 * self.plates.spacing:
+            raise complaint(
+                f'thickness "{format_length(self.thickness)}" with spacing "{format_length(self.plates.spacing)}": '
+                "the two edges of the plates would see each other's near fields, and they are solved one by one; "
+                f"the thickness must be at least {format_length(0.5 * self.plates.spacing)}"
+            )
+        return self
 
 
 class PatchesData(FileTable):
@@ -195,6 +151,14 @@ class FilmTable(FileTable):
     film: FilmData = Field(description='{ sheet_resistance = "377 ohm" }')
 
 
+class GridTable(FileTable):
+    """A plane of parallel wires, zero thickness."""
+
+    tag: ClassVar[str] = "grid entry"
+    name: str = _NAME
+    grid: GridData = Field(description='{ axis = "x", pitch = "2 mm", radius = "50 um", metal = "copper" }')
+
+
 class GroupTable(FileTable):
     """Layers and sheets, repeated."""
 
@@ -205,10 +169,12 @@ class GroupTable(FileTable):
 
 
 def entry_shape(value: Any) -> Shape | None:
-    """Which of the five forms a `[[layer]]` entry has; None if none, or a mixture."""
+    """Which of the forms a `[[layer]]` entry has; None if none, or a mixture."""
     if not isinstance(value, dict):
         return None
     hit = [shape for shape, keys in _SHAPES.items() if any(key in value for key in keys)]
+    if "thickness" in value and "plates" not in hit and "layer" not in hit:
+        hit.append("layer")
     return hit[0] if len(hit) == 1 else None
 
 
@@ -222,7 +188,7 @@ def entry_complaint(value: Any) -> str:
     if not isinstance(value, dict):
         return f"an entry must be a table: {ENTRY_FORMS}"
     markers = [key for keys in _SHAPES.values() for key in keys]
-    found = [key for key in value if key in markers]
+    found = [key for key in value if key in markers] or [key for key in value if key == "thickness"]
     if found:
         return f"{' and '.join(found)} in one entry; an entry is either {ENTRY_FORMS}"
     unknown = [key for key in value if key != "name"]
@@ -236,9 +202,11 @@ def entry_complaint(value: Any) -> str:
 
 Entry = Annotated[
     Annotated[LayerTable, Tag("layer entry")]
+    | Annotated[PlatesTable, Tag("plates entry")]
     | Annotated[PatchesTable, Tag("patches entry")]
     | Annotated[StripsTable, Tag("strips entry")]
     | Annotated[FilmTable, Tag("film entry")]
+    | Annotated[GridTable, Tag("grid entry")]
     | Annotated[GroupTable, Tag("group entry")],
     Discriminator(_entry_tag),
 ]

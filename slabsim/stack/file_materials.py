@@ -13,7 +13,6 @@ from slabsim.stack.quantities import (
     Spectral,
     Time,
     complaint,
-    form_of,
 )
 
 MODELS = ("drude", "lorentz", "debye", "sellmeier", "table")
@@ -112,19 +111,58 @@ class ResonanceTable(FileTable):
 
 
 def _number_or_table(value: Any) -> str:
-    return "a table" if form_of(value) == "a table" else "a number"
+    return "a table" if isinstance(value, dict | FileTable) else "a number"
 
 
-Permeability = Annotated[
+def _magnetic_form(value: Any) -> str:
+    has_axes = isinstance(value, MagneticAxesTable) or (
+        isinstance(value, dict) and bool({"xx", "yy", "zz"} & set(value))
+    )
+    return "axes" if has_axes else _number_or_table(value)
+
+
+class ElectricAxesTable(FileTable):
+    """Relative permittivity along the axes of the layer."""
+
+    tag: ClassVar[str] = "a table"
+    xx: float = Field(description="Along x")
+    yy: float = Field(description="Along y")
+    zz: float = Field(description="Along z, across the layer")
+
+
+_AxisPermeability = Annotated[
     Annotated[float, Tag("a number")] | Annotated[ResonanceTable, Tag("a table")],
     Discriminator(_number_or_table),
+]
+
+
+class MagneticAxesTable(FileTable):
+    """Relative permeability along the axes of the layer, each a number or a resonance."""
+
+    tag: ClassVar[str] = "axes"
+    xx: _AxisPermeability = Field(description="Along x")
+    yy: _AxisPermeability = Field(description="Along y")
+    zz: _AxisPermeability = Field(description="Along z, across the layer")
+
+
+Permittivity = Annotated[
+    Annotated[float, Tag("a number")] | Annotated[ElectricAxesTable, Tag("a table")],
+    Discriminator(_number_or_table),
+]
+Permeability = Annotated[
+    Annotated[float, Tag("a number")]
+    | Annotated[ResonanceTable, Tag("a table")]
+    | Annotated[MagneticAxesTable, Tag("axes")],
+    Discriminator(_magnetic_form),
 ]
 
 
 class MaterialTable(FileTable):
     """One material: exactly one electric model, and a permeability if it is magnetic."""
 
-    permittivity: float | None = Field(None, description="Relative permittivity, a plain number")
+    permittivity: Permittivity | None = Field(
+        None, description="Relative permittivity, a plain number, or { xx = 2.1, yy = 2.1, zz = 2.4 }"
+    )
     loss_tangent: float | None = Field(None, description="tan d of the permittivity, zero or more")
     conductivity: Conductivity | None = Field(None, description='DC conductivity, such as "5.8e7 S/m"')
     drude: DrudeTable | None = Field(None, description="Free electrons: background - wp^2/(w^2 + i w g)")
@@ -136,7 +174,9 @@ class MaterialTable(FileTable):
         description='File with a header "wavelength (um),n,k" or "frequency (THz),eps_re,eps_im"',
         min_length=1,
     )
-    permeability: Permeability = Field(1.0, description="A plain number, or a table with a resonance")
+    permeability: Permeability = Field(
+        1.0, description="A plain number, a table with a resonance, or { xx, yy, zz } of these"
+    )
 
     @field_validator("loss_tangent")
     @classmethod

@@ -6,20 +6,59 @@ Sheets have no thickness, so all sheets between two layers lie in one plane:
 """
 
 from dataclasses import dataclass
+from math import atan2, hypot
+from math import degrees as to_degrees
 from typing import Literal
 
 from slabsim.stack.complaints import Complaints
-from slabsim.stack.file_layers import LoadTable, WireTable
+from slabsim.stack.directions import cos_sin_deg
+from slabsim.stack.file_wires import LoadTable, MeshTable, WireTable
 from slabsim.stack.lines import Path
+from slabsim.stack.sample import Direction
 from slabsim.units import format_length
 
 EndKind = Literal["open", "grounded", "joined"]
-Shape = Literal["layer", "patches", "strips", "film", "unknown"]
+Shape = Literal["layer", "plates", "patches", "strips", "film", "grid", "unknown"]
+_SHEETS = ("patches", "strips", "film", "grid")
 _SIDES = ("front", "back")
+_SAME = 1e-9  # components of two directions that differ by less are equal
 _GROUP_CURE = (
     "; the repeats of a group are all alike: write the layers that differ, often the first and the last "
     "repeat, out as entries of their own"
 )
+
+
+@dataclass(frozen=True)
+class EndedWires:
+    """Wires that end at the faces of a layer: a set, or those along z of a mesh.
+
+    Parameters
+    ----------
+    path : Path
+        Where the file describes them, from the layer on: ("wires", 0) or ("mesh",).
+    table : WireTable or MeshTable
+    direction : Direction
+        Along the wires, the rotation of the layer included.
+    """
+
+    path: Path
+    table: WireTable | MeshTable
+    direction: Direction
+
+    @classmethod
+    def of(cls, path: Path, table: WireTable | MeshTable, rotation_deg: float) -> "EndedWires":
+        """Wires of a layer that is turned about z."""
+        c, s = cos_sin_deg(rotation_deg)
+        x, y, z = table.direction
+        return cls(path, table, (x * c - y * s, x * s + y * c, z))
+
+    def runs_like(self, other: "EndedWires") -> bool:
+        """Whether both have one direction."""
+        return all(abs(a - b) < _SAME for a, b in zip(self.direction, other.direction, strict=True))
+
+    def fits(self, other: "EndedWires") -> bool:
+        """Whether both have one direction and one cell."""
+        return self.runs_like(other) and self.table.cell == other.table.cell
 
 
 @dataclass(frozen=True)
@@ -32,13 +71,13 @@ class Place:
         Where the file describes it; repeats of a group share it.
     shape : str
         "unknown" if a fault in the file hides it.
-    wires : WireTable, optional
-        The wires of a layer.
+    wires : tuple of EndedWires
+        The wires of a layer that end at its faces.
     """
 
     path: Path
     shape: Shape
-    wires: WireTable | None = None
+    wires: tuple[EndedWires, ...] = ()
 
     @property
     def is_in_group(self) -> bool:
@@ -48,12 +87,13 @@ class Place:
 
 @dataclass(frozen=True)
 class _Face:
-    """What lies beyond one face of a layer: sheets, then a layer or (None) a half-space."""
+    """What lies beyond one face of a layer, for one set of its wires: sheets, then a layer or (None) a half-space."""
 
     sheets: tuple[Place, ...]
     beyond: Place | None
     is_backed: bool
     side: int  # 0 front, 1 back
+    partner: EndedWires | None  # wires of the next layer that these go on in, or would if they fitted
 
     @property
     def has_conductor(self) -> bool:
@@ -62,8 +102,7 @@ class _Face:
     @property
     def facing_end(self) -> str | LoadTable | None:
         """The wire end that looks at this face from the next layer."""
-        wires = self.beyond.wires if self.beyond and not self.sheets else None
-        return wires.ends[1 - self.side] if wires else None
+        return self.partner.table.ends[1 - self.side] if self.partner else None
 
 
 def resolve_ends(places: list[Place], is_backed: bool, complaints: Complaints) -> dict[Path, EndKind]:
@@ -85,16 +124,17 @@ def resolve_ends(places: list[Place], is_backed: bool, complaints: Complaints) -
     """
     kinds: dict[Path, EndKind] = {}
     for index, place in enumerate(places):
-        for side in (0, 1) if place.wires else ():
-            path = (*place.path, "wires", 0, "ends", side)
-            cure = _GROUP_CURE if place.is_in_group else ""
-            try:
-                kind = _kind_of(place.wires, _face(places, index, side, is_backed))
-            except _ImpossibleEndError as impossible:
-                complaints.add(path, f"{impossible}{cure}")
-                continue
-            if kind is not None and kinds.setdefault(path, kind) != kind:
-                complaints.add(path, f"the load is {kinds[path]} in one repeat and {kind} in another{cure}")
+        cure = _GROUP_CURE if place.is_in_group else ""
+        for wires in place.wires:
+            for side in (0, 1):
+                path = (*place.path, *wires.path, "ends", side)
+                try:
+                    kind = _kind_of(wires, _face(places, index, side, is_backed, wires))
+                except _ImpossibleEndError as impossible:
+                    complaints.add(path, f"{impossible}{cure}")
+                    continue
+                if kind is not None and kinds.setdefault(path, kind) != kind:
+                    complaints.add(path, f"the load is {kinds[path]} in one repeat and {kind} in another{cure}")
     return kinds
 
 
@@ -102,21 +142,31 @@ class _ImpossibleEndError(Exception):
     """Says why a wire cannot end so."""
 
 
-def _face(places: list[Place], index: int, side: int, is_backed: bool) -> _Face:
-    step = 1 if side else -1
+def _face(places: list[Place], index: int, side: int, is_backed: bool, wires: EndedWires) -> _Face:
+    step, own = (1 if side else -1), places[index]
     sheets = []
     index += step
-    while 0 <= index < len(places) and places[index].shape in ("patches", "strips", "film"):
+    while 0 <= index < len(places) and places[index].shape in _SHEETS:
         sheets.append(places[index])
         index += step
     beyond = places[index] if 0 <= index < len(places) else None
-    return _Face(tuple(sheets), beyond, is_backed and side == 1 and beyond is None, side)
+    partner = _partner(own, wires, beyond) if beyond is not None and not sheets else None
+    return _Face(tuple(sheets), beyond, is_backed and side == 1 and beyond is None, side, partner)
 
 
-def _kind_of(wires: WireTable | None, face: _Face) -> EndKind | None:
+def _partner(own: Place, wires: EndedWires, beyond: Place) -> EndedWires | None:
+    """The set that fits; of several alike the one of the same rank; if none fits, the one nearest to it."""
+    fitting = [other for other in beyond.wires if wires.fits(other)]
+    rank = [other for other in own.wires if wires.fits(other)].index(wires)
+    if rank < len(fitting):
+        return fitting[rank]
+    return next((other for other in beyond.wires if wires.runs_like(other)), next(iter(beyond.wires), None))
+
+
+def _kind_of(wires: EndedWires, face: _Face) -> EndKind | None:
     """None where a fault elsewhere in the file hides the answer."""
-    end = wires.ends[face.side] if wires else "open"
-    if wires is None or end == "open":
+    end = wires.table.ends[face.side]
+    if end == "open":
         return "open"
     if face.has_conductor and end != "joined":
         return "grounded"
@@ -133,14 +183,14 @@ def _kind_of(wires: WireTable | None, face: _Face) -> EndKind | None:
     return "joined"
 
 
-def _check_joint(wires: WireTable, face: _Face) -> None:
+def _check_joint(wires: EndedWires, face: _Face) -> None:
     if face.sheets:
         cure = 'use "grounded" on both sides' if face.has_conductor else 'use "open" on both sides'
         raise _ImpossibleEndError(
             f'"joined", but a sheet ({face.sheets[0].shape}) lies between, which wires do not cross; {cure}'
         )
     if face.facing_end is None:
-        raise _ImpossibleEndError(f'"joined" needs wires in the next layer; {_seen(face)}')
+        raise _ImpossibleEndError(f'"joined" needs wires in the next layer that end at this face; {_seen(face)}')
     if face.facing_end in ("open", "grounded"):
         raise _ImpossibleEndError(
             f'"joined", but the end of the next layer\'s wires that faces it is "{face.facing_end}"; '
@@ -151,9 +201,16 @@ def _check_joint(wires: WireTable, face: _Face) -> None:
         _check_cells(wires, face)
 
 
-def _check_cells(wires: WireTable, face: _Face) -> None:
-    other = face.beyond.wires if face.beyond else None
-    if other is not None and other.cell != wires.cell:
+def _check_cells(wires: EndedWires, face: _Face) -> None:
+    other = face.partner
+    if other is None:
+        return
+    if not wires.runs_like(other):
+        raise _ImpossibleEndError(
+            f"joined to wires of another direction: {_direction(wires)} here, {_direction(other)} there; "
+            "joined wires need the same axis, the rotation of their layers included"
+        )
+    if other.table.cell != wires.table.cell:
         raise _ImpossibleEndError(
             f"joined to wires of another cell: {_cell(wires)} here, {_cell(other)} there; "
             "joined wires need the same pitch"
@@ -175,16 +232,22 @@ def _conductors(face: _Face) -> str:
 
 
 def _seen(face: _Face) -> str:
-    strips = "strips, which do not count, and " if face.sheets else ""
+    names = dict.fromkeys("strips" if sheet.shape == "strips" else "a grid" for sheet in face.sheets)
+    idle = f"{' and '.join(names)}, which {'do' if 'strips' in names else 'does'} not count, and " if names else ""
     if face.beyond is None:
-        return (
-            f"here are {strips}the {_SIDES[face.side]} half-space"
-            if strips
-            else f"here is the {_SIDES[face.side]} half-space"
-        )
-    what = "a layer with wires" if face.beyond.wires else "a layer without wires"
-    return f"here are {strips}{what}" if strips else f"here is {what}"
+        what = f"the {_SIDES[face.side]} half-space"
+    elif face.beyond.shape == "plates":
+        what = "a layer of plates"
+    else:
+        what = "a layer with wires" if face.beyond.wires else "a layer without wires that end there"
+    return f"here {'are' if 'strips' in names else 'is'} {idle}{what}"
 
 
-def _cell(wires: WireTable) -> str:
-    return " by ".join(format_length(side) for side in wires.cell)
+def _cell(wires: EndedWires) -> str:
+    return " by ".join(format_length(side) for side in wires.table.cell)
+
+
+def _direction(wires: EndedWires) -> str:
+    x, y, z = wires.direction
+    tilt = to_degrees(atan2(hypot(x, y), z))
+    return f"tilt {tilt:.4g} deg" + (f", azimuth {to_degrees(atan2(y, x)):.4g} deg" if tilt > 0.0 else "")

@@ -5,20 +5,22 @@ import numpy as np
 from slabsim.errors import InputError, MaterialError
 from slabsim.materials.material import PASSIVE, Material
 from slabsim.materials.wires import plasma_wavenumber
-from slabsim.stack.file_layers import WireTable
+from slabsim.stack.file_wires import MeshTable, WireTable
 from slabsim.units import format_spectral
 
 _ROUNDING = 1e-14
+_AXES = ((0, "_xx"), (1, "_yy"), (2, "_zz"))
 
 
 def material_fault(material: Material, frequencies: np.ndarray, unit: str) -> str | None:
     """Why `material` cannot be used at `frequencies` [Hz], or None; `unit` is the sweep's own."""
     try:
-        eps, mu = material.permittivity(frequencies), material.permeability(frequencies)
+        eps, mu = material.permittivity_axes(frequencies), material.permeability_axes(frequencies)
     except MaterialError as error:
         first, last = (format_spectral(frequencies[end], unit) for end in (0, -1))
         return f"{error}; the sweep goes from {first} to {last}: narrow it or extend the data"
-    for symbol, values in (("eps", eps), ("mu", mu)):
+    axes = [(f"{symbol}{axis}", values[k]) for symbol, values in (("eps", eps), ("mu", mu)) for k, axis in _AXES]
+    for symbol, values in [("eps", eps[0]), ("mu", mu[0])] if material.is_isotropic else axes:
         at = _first(frequencies, ~np.isfinite(values), unit)
         if at:
             return f"{symbol} is not finite at {at}, a pole of its formula; add damping or move the sweep point"
@@ -42,15 +44,24 @@ def front_fault(material: Material, frequencies: np.ndarray, unit: str) -> str |
     return f'"{material.name}" has eps <= 0 or mu <= 0 at {at}; {allowed}' if at else None
 
 
-def metal_fault(metal: Material, host: Material, frequencies: np.ndarray, unit: str) -> str | None:
-    """Why wires in `host` cannot be made of `metal`, or None."""
+def isotropy_fault(material: Material, what: str) -> str | None:
+    """Why `what` cannot be made of `material`, or None."""
+    if material.is_isotropic:
+        return None
+    return f'"{material.name}" is anisotropic; {what} must be isotropic: give one permittivity and permeability'
+
+
+def metal_fault(metal: Material, host: Material | None, frequencies: np.ndarray, unit: str) -> str | None:
+    """Why wires in `host` (None: between two media) cannot be made of `metal`, or None."""
     if metal.is_magnetic:
         return f'"{metal.name}" is magnetic; the metal of wires must have permeability 1'
+    if host is None or not metal.is_isotropic:
+        return isotropy_fault(metal, "the metal of wires")
     at = _first(frequencies, metal.permittivity(frequencies) == host.permittivity(frequencies), unit)
     return f'"{metal.name}" has the permittivity of its host at {at}: there are no wires; name a metal' if at else None
 
 
-def lattice_fault(wires: WireTable, host: Material) -> str | None:
+def lattice_fault(wires: WireTable | MeshTable, host: Material) -> str | None:
     """Why the plasma wavenumber of `wires` in `host` cannot be had, or None."""
     try:
         plasma_wavenumber(wires.cell, wires.radius, wires.plasma, host)

@@ -2,13 +2,15 @@
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Any, Literal
+from typing import Any, Literal, TypeGuard
 
-from pydantic import ValidationError
+from pydantic import TypeAdapter, ValidationError
 
 from slabsim.stack.complaints import Complaints
-from slabsim.stack.file_layers import MAX_ELEMENTS, WireTable, entry_shape
-from slabsim.stack.joints import Place
+from slabsim.stack.file_layers import MAX_ELEMENTS, entry_shape
+from slabsim.stack.file_sweep import AzimuthAngle, degrees
+from slabsim.stack.file_wires import GridData, MeshTable, WireTable
+from slabsim.stack.joints import EndedWires, Place
 from slabsim.stack.lines import Path
 
 
@@ -18,7 +20,11 @@ class Use:
 
     path: Path
     name: str
-    role: Literal["front", "back", "host", "metal"]
+    role: Literal["front", "back", "host", "metal", "filling"]
+
+
+Wires = WireTable | MeshTable | GridData
+_ROTATION: TypeAdapter[Any] = TypeAdapter(AzimuthAngle)
 
 
 def written_out(raw: dict[str, Any], complaints: Complaints) -> list[Place]:
@@ -43,9 +49,12 @@ def uses(raw: dict[str, Any]) -> Iterator[Use]:
 def _entry_uses(path: Path, entry: dict[str, Any]) -> Iterator[Use]:
     if isinstance(entry.get("material"), str):
         yield Use((*path, "material"), entry["material"], "host")
-    for wires_path, wires in _entries(entry.get("wires"), (*path, "wires")):
+    for wires_path, wires in _wire_entries(path, entry):
         if isinstance(wires.get("metal"), str):
             yield Use((*wires_path, "metal"), wires["metal"], "metal")
+    plates = entry.get("plates")
+    if isinstance(plates, dict) and isinstance(plates.get("filling"), str):
+        yield Use((*path, "plates", "filling"), plates["filling"], "filling")
     for inner_path, inner in _entries(entry.get("layers"), (*path, "layers")):
         yield from _entry_uses(inner_path, inner)
 
@@ -61,16 +70,59 @@ def _places(path: Path, entry: dict[str, Any]) -> list[Place]:
         return once * _repeat(entry) if _is_good(entry) else [Place(path, "unknown")]
     if shape is None:
         return [Place(path, "unknown")]
-    if shape != "layer" or "wires" not in entry:
+    if shape != "layer" or not ("wires" in entry or "mesh" in entry):
         return [Place(path, shape)]
-    wires = _wires(entry)
-    return [Place(path, "layer" if wires else "unknown", wires)]
+    tables = [(place[len(path) :], _validated(place, one)) for place, one in _wire_entries(path, entry)]
+    rotation = _rotation(entry)
+    if rotation is None or not tables or any(table is None for _, table in tables):
+        return [Place(path, "unknown")]
+    wires = [EndedWires.of(place, table, rotation) for place, table in tables if _ends(table)]
+    return [Place(path, "layer", tuple(wires))]
 
 
-def _wires(entry: dict[str, Any]) -> WireTable | None:
-    sets = entry["wires"]
+def wire_tables(raw: dict[str, Any]) -> Iterator[tuple[Path, Path | None, Wires]]:
+    """Every set of wires, mesh and grid without a fault: its path, that of its layer (None of a grid), its table."""
+    for path, entry in _layer_entries(raw.get("layer"), ("layer",)):
+        for place, one in _wire_entries(path, entry):
+            table = _validated(place, one)
+            if table is not None:
+                yield place, None if isinstance(table, GridData) else path, table
+
+
+def has_plates(raw: dict[str, Any]) -> bool:
+    """Whether some layer consists of plates."""
+    return any("plates" in entry for _, entry in _layer_entries(raw.get("layer"), ("layer",)))
+
+
+def _layer_entries(entries: Any, path: Path) -> Iterator[tuple[Path, dict[str, Any]]]:
+    for place, entry in _entries(entries, path):
+        yield place, entry
+        yield from _layer_entries(entry.get("layers"), (*place, "layers"))
+
+
+def _wire_entries(path: Path, entry: dict[str, Any]) -> list[tuple[Path, dict[str, Any]]]:
+    """Tables of wires in one entry."""
+    single = [((*path, key), entry[key]) for key in ("mesh", "grid") if isinstance(entry.get(key), dict)]
+    return _entries(entry.get("wires"), (*path, "wires")) + single
+
+
+def _validated(path: Path, raw: dict[str, Any]) -> Wires | None:
+    kinds: dict[str | int, type[Wires]] = {"mesh": MeshTable, "grid": GridData}
+    kind = kinds.get(path[-1], WireTable)
     try:
-        return WireTable.model_validate(sets[0]) if isinstance(sets, list) and len(sets) == 1 else None
+        return kind.model_validate(raw)
+    except ValidationError:
+        return None
+
+
+def _ends(table: Wires | None) -> TypeGuard[WireTable | MeshTable]:
+    """Whether these are wires that end at the faces."""
+    return isinstance(table, WireTable | MeshTable) and table.direction[2] > 0.0
+
+
+def _rotation(entry: dict[str, Any]) -> float | None:
+    try:
+        return degrees(_ROTATION.validate_python(entry["rotation"])) if "rotation" in entry else 0.0
     except ValidationError:
         return None
 

@@ -20,15 +20,22 @@ from slabsim.stack.building import build_material, build_stack
 from slabsim.stack.complaints import Complaints
 from slabsim.stack.document import Document
 from slabsim.stack.file_materials import MaterialTable
-from slabsim.stack.file_sweep import SpectrumAxis, frequencies, spectral_unit
-from slabsim.stack.joints import Place, resolve_ends
+from slabsim.stack.file_sweep import AzimuthAxis, SpectrumAxis, angles_deg, frequencies, spectral_unit
+from slabsim.stack.file_wires import GridData, MeshTable
+from slabsim.stack.joints import resolve_ends
 from slabsim.stack.lines import key_lines
-from slabsim.stack.physical import front_fault, lattice_fault, material_fault, metal_fault
-from slabsim.stack.places import uses, written_out
+from slabsim.stack.physical import front_fault, isotropy_fault, lattice_fault, material_fault, metal_fault
+from slabsim.stack.places import has_plates, uses, wire_tables, written_out
 from slabsim.stack.quantities import CONDUCTOR_NAME, VACUUM_NAME
 from slabsim.stack.sample import Stack
 
 _SPECTRUM: TypeAdapter[Any] = TypeAdapter(SpectrumAxis)
+_AZIMUTH: TypeAdapter[Any] = TypeAdapter(AzimuthAxis)
+_ISOTROPIC = {
+    "front": "the front half-space",
+    "back": "the back half-space",
+    "filling": "the filling of plates",
+}
 
 
 def read_stack(path: FilePath | str) -> Stack:
@@ -136,7 +143,9 @@ class _Reading:
         usable = self._usable(materials)
         places = written_out(self.raw, self.complaints)
         ends = resolve_ends(places, self.raw.get("back") == CONDUCTOR_NAME, self.complaints)
-        self._check_wires(places, usable)
+        self._check_wires(usable)
+        self._check_isotropy(materials)
+        self._check_azimuths()
         faults = self.complaints.faults
         if document is None or faults:
             raise StackError(file_name, faults)
@@ -204,14 +213,38 @@ class _Reading:
             return None
         return frequencies(axis), spectral_unit(axis)
 
-    def _check_wires(self, places: list[Place], materials: dict[str, Material]) -> None:
+    def _check_wires(self, materials: dict[str, Material]) -> None:
         hosts = {use.path[:-1]: materials.get(use.name) for use in uses(self.raw) if use.role == "host"}
-        for path, wires in {place.path: place.wires for place in places}.items():
-            host = hosts.get(path)
-            if wires is None or host is None:
+        for path, layer, wires in wire_tables(self.raw):
+            host = None if layer is None else hosts.get(layer)
+            if layer is not None and host is None:
                 continue
-            where = (*path, "wires", 0)
-            self.complaints.add_if((*where, "plasma"), lattice_fault(wires, host))
+            if host is not None and not isinstance(wires, GridData):
+                self.complaints.add_if((*path, "plasma"), lattice_fault(wires, host))
+            if host is not None and isinstance(wires, MeshTable):
+                self.complaints.add_if((*path[:-1], "material"), isotropy_fault(host, "the host of a mesh"))
             metal = materials.get(wires.metal)
             if metal is not None and self._spectrum is not None:
-                self.complaints.add_if((*where, "metal"), metal_fault(metal, host, *self._spectrum))
+                self.complaints.add_if((*path, "metal"), metal_fault(metal, host, *self._spectrum))
+
+    def _check_isotropy(self, materials: dict[str, Material]) -> None:
+        for use in uses(self.raw):
+            if use.role in _ISOTROPIC and use.name in materials:
+                self.complaints.add_if(use.path, isotropy_fault(materials[use.name], _ISOTROPIC[use.role]))
+
+    def _check_azimuths(self) -> None:
+        """Plates are solved in two planes of incidence only."""
+        sweep = self.raw.get("sweep")
+        if not has_plates(self.raw) or not isinstance(sweep, dict) or "azimuth" not in sweep:
+            return
+        try:
+            azimuths = angles_deg(_AZIMUTH.validate_python(sweep["azimuth"]))
+        except ValidationError:
+            return
+        slanted = azimuths[azimuths % 90.0 != 0.0]
+        if slanted.size:
+            self.complaints.add(
+                ("sweep", "azimuth"),
+                f"{slanted[0]:g} deg with plates in the stack: the reflection of their edge is known for planes of "
+                "incidence along and across the plates; every azimuth must be a multiple of 90 deg",
+            )

@@ -27,8 +27,8 @@ from tests.stack.texts import SLAB, SWEEP, WINDOW, faults_of, the_fault_of
         ('angle = "30 deg"\n', "", "line 14, sweep: angle: missing; Polar angles"),
         (
             'thickness = "10 mm"',
-            'thickness = "10 mm"\nmesh = {}',
-            "mesh: unknown key; allowed are name, material, thickness, wires",
+            'thickness = "10 mm"\ngrids = {}',
+            "grids: unknown key; allowed are name, material, thickness, wires, mesh, rotation",
         ),
         ('"10 mm"', "10", 'layer 1 "slab": thickness: 10 has no unit; a length is written as text with its unit'),
         ('"10 mm"', '"10 GHz"', 'thickness: "10 GHz": "GHz" is a unit of frequency; a length is wanted'),

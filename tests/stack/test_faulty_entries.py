@@ -10,12 +10,12 @@ from tests.stack.texts import SWEEP, faults_of
     [
         (
             "",
-            "line 1, layer 1: an empty entry; an entry is either a layer (material, thickness, and wires if any), "
-            "a sheet (one of patches, strips, film) or a group (repeat, layers)",
+            "line 1, layer 1: an empty entry; an entry is either a layer (material, thickness, and wires or mesh if "
+            "any), plates (plates, thickness), a sheet (one of patches, strips, film, grid) or a group (repeat, layers)",
         ),
         ('name = "x"', 'line 1, layer 1 "x": an empty entry; an entry is either'),
         ('pacthes = { period = "2 mm" }', 'line 1, layer 1: unknown key "pacthes"; did you mean "patches"?'),
-        ('grid = { pitch = "2 mm" }', 'layer 1: unknown key "grid"; an entry is either a layer'),
+        ('antenna = { pitch = "2 mm" }', 'layer 1: unknown key "antenna"; an entry is either a layer'),
         ('material = "vacuum"\nfilm = {}', "layer 1: material and film in one entry; an entry is either a layer"),
         ("repeat = 2\nstrips = {}", "layer 1: repeat and strips in one entry; an entry is either"),
         (

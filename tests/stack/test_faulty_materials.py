@@ -13,7 +13,11 @@ from tests.stack.texts import SLAB, the_fault_of
             'permittivity = "1.07"',
             'line 2, material.foam: permittivity: "1.07"; it must be a plain number without quotes (remove the quotes)',
         ),
-        ("permittivity = 1.07", "permittivity = { xx = 1 }", "permittivity: a table; it must be a plain number"),
+        (
+            "permittivity = 1.07",
+            "permittivity = { xx = 1, yy = 2 }",
+            "permittivity.zz: missing; Along z, across the layer",
+        ),
         ("permittivity = 1.07", "permittivity = nan", "permittivity: NaN; it must be a finite number"),
         ("permittivity = 1.07", "permittivity = inf", "permittivity: Infinity; it must be a finite number"),
         ("permittivity = 1.07", "permittivity = true", "permittivity: true; it must be a plain number"),

@@ -22,8 +22,32 @@ from tests.stack.texts import SLAB, the_fault_of
         ('pitch = "2 mm"', 'pitch = ["2 mm"]', "wires 1: pitch: 1 item; it must have at least 2"),
         ('pitch = "2 mm"', 'pitch = ["2 mm", "3 mm", "4 mm"]', "wires 1: pitch: 3 items; it must have at most 2"),
         ('pitch = "2 mm"', 'pitch = ["2 mm", "3 GHz"]', 'wires 1: pitch 2: "3 GHz": "GHz" is a unit of frequency'),
-        ('pitch = "2 mm"', 'pitch = "2 mm"\naxis = "x"', 'wires 1: axis: "x"; allowed is "z"'),
-        ('pitch = "2 mm"', 'pitch = "2 mm"\naxis = { tilt = "20 deg" }', 'wires 1: axis: a table; allowed is "z"'),
+        ('pitch = "2 mm"', 'pitch = "2 mm"\naxis = "v"', 'wires 1: axis: "v"; allowed are "x", "y", "z"'),
+        (
+            'pitch = "2 mm"',
+            'pitch = "2 mm"\naxis = "x"',
+            "wires 1: ends of wires that are parallel to the faces: they end at no face; leave ends out",
+        ),
+        (
+            'pitch = "2 mm"',
+            'pitch = "2 mm"\naxis = { tilt = "95 deg" }',
+            'wires 1: axis.tilt: "95 deg"; a tilt from z must lie between 0 deg and 90 deg',
+        ),
+        (
+            'pitch = "2 mm"',
+            'pitch = "2 mm"\naxis = { tilt = "89.95 deg" }',
+            'axis.tilt: "89.95 deg": such wires hardly reach the other face; a tilt is at most 89.9 deg, or "90 deg" for',
+        ),
+        (
+            'pitch = "2 mm"',
+            'pitch = "2 mm"\naxis = { azimuth = "0 deg" }',
+            "axis.tilt: missing; Angle from z, 0 to 90 deg",
+        ),
+        (
+            'pitch = "2 mm"',
+            'pitch = "2 mm"\ninductance = "hots"',
+            'inductance: "hots"; allowed are "vacuum", "host"; did you',
+        ),
         (
             '["open", "open"]',
             '["open", "opne"]',
@@ -55,11 +79,6 @@ from tests.stack.texts import SLAB, the_fault_of
         ),
         ('radius = "50 um"', 'radius = "0.6 mm"', "wires 1: plasma: the lattice formula has no solution at radius"),
         ("[[layer.wires]]", "[layer.wires]", "wires: a single table; its header takes two brackets, [[layer.wires]]"),
-        (
-            'pitch = "2 mm"',
-            'pitch = "2 mm"\nradius = "1 um"\nmetal = "copper"\n[[layer.wires]]\npitch = "2 mm"',
-            "wires: 2 sets of wires; there must be one set of wires per layer",
-        ),
     ],
 )
 def test_wires_that_cannot_be_are_told_with_place_and_cure(old, new, fault):

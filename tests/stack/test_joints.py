@@ -28,7 +28,7 @@ GROUP = "[[layer]]\nrepeat = 3\n"
 def kinds(text):
     """Kinds of the ends of all layers with wires, front to back."""
     layers = parse_stack(text + SWEEP).flatten()
-    return [tuple(end.kind for end in layer.wires.ends) for layer in layers if getattr(layer, "wires", None)]
+    return [tuple(end.kind for end in layer.wires[0].ends) for layer in layers if getattr(layer, "wires", None)]
 
 
 @pytest.mark.parametrize(
@@ -86,18 +86,24 @@ NEEDS_CONDUCTOR = '"grounded" needs a conductor at this face, patches or a film'
             wires("open", "grounded"),
             f'ends 2: {NEEDS_CONDUCTOR} or back = "perfect conductor"; here is the back half-space',
         ),
-        (BACKED + wires("open", "grounded") + PLAIN, f"ends 2: {NEEDS_CONDUCTOR}; here is a layer without wires"),
+        (
+            BACKED + wires("open", "grounded") + PLAIN,
+            f"ends 2: {NEEDS_CONDUCTOR}; here is a layer without wires that end there",
+        ),
         (BACKED + wires("grounded", "open"), f"ends 1: {NEEDS_CONDUCTOR}; here is the front half-space"),
         (STRIPS + wires("grounded", "open"), f"{NEEDS_CONDUCTOR}; here are strips, which do not count, and the front"),
         (wires("open", "grounded") + wires("open", "open"), f"ends 2: {NEEDS_CONDUCTOR}; here is a layer with wires"),
         (
             PLAIN + wires("joined", "open"),
-            'layer 2: wires 1: ends 1: "joined" needs wires in the next layer; here is a layer',
+            'layer 2: wires 1: ends 1: "joined" needs wires in the next layer that end at this face; here is a layer',
         ),
-        (wires("joined", "open"), 'ends 1: "joined" needs wires in the next layer; here is the front half-space'),
+        (
+            wires("joined", "open"),
+            'ends 1: "joined" needs wires in the next layer that end at this face; here is the front half-space',
+        ),
         (
             BACKED + wires("open", "joined"),
-            'ends 2: "joined" needs wires in the next layer; here is the back half-space',
+            'ends 2: "joined" needs wires in the next layer that end at this face; here is the back half-space',
         ),
         (
             wires("open", "joined") + wires("open", "open"),
@@ -147,10 +153,11 @@ def test_one_end_that_cannot_be_is_told_with_what_its_face_offers(text, fault):
         (
             GROUP + wires("joined", "joined", table="layer.layers"),
             [
-                'ends 1: "joined" needs wires in the next layer; here is the front half-space; the repeats of a '
-                "group are all alike: write the layers that differ, often the first and the last repeat, out as "
+                'ends 1: "joined" needs wires in the next layer that end at this face; here is the front half-space; '
+                "the repeats of a group are all alike: write the layers that differ, often the first and the last repeat, out as "
                 "entries of their own",
-                'ends 2: "joined" needs wires in the next layer; here is the back half-space; the repeats of a group',
+                'ends 2: "joined" needs wires in the next layer that end at this face; here is the back half-space; '
+                "the repeats of a group",
             ],
         ),
     ],

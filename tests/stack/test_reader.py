@@ -36,30 +36,30 @@ def test_layers_sheets_and_groups_stand_in_the_order_of_the_file(window):
 
 def test_lengths_and_names_are_taken_over(window):
     skin, patches, slab, *_ = window.elements
-    assert (skin.name, skin.thickness, skin.wires) == ("skin", 0.5e-3, None)
+    assert (skin.name, skin.thickness, skin.wires) == ("skin", 0.5e-3, ())
     assert (patches.period, patches.gap) == (2e-3, 0.2e-3)
-    assert (slab.wires.pitch, slab.wires.radius, slab.wires.plasma) == ((2e-3, 2e-3), 50e-6, "lattice")
-    assert window.elements[3].wires.plasma == 12.3e9
+    assert (slab.wires[0].pitch, slab.wires[0].radius, slab.wires[0].plasma) == ((2e-3, 2e-3), 50e-6, "lattice")
+    assert window.elements[3].wires[0].plasma == 12.3e9
     assert window.elements[4] == Film("absorber", sheet_resistance=377.0)
     assert window.elements[6] == Film("", conductivity=5.8e7, thickness=20e-9)
 
 
 def test_ends_take_the_meaning_their_faces_offer(window):
-    front, back = window.elements[2].wires.ends
+    front, back = window.elements[2].wires[0].ends
     assert (front, back) == (WireEnd("grounded"), WireEnd("joined"))
-    front, back = window.elements[3].wires.ends
+    front, back = window.elements[3].wires[0].ends
     assert front == WireEnd("joined", SeriesLoad(50.0, 1e-9, None))
     assert back == WireEnd("grounded", SeriesLoad(0.0, 0.0, 0.1e-12))
 
 
 def test_materials_have_the_values_of_their_models(window):
     f = np.array([10e9])
-    foam, copper = window.elements[0].material, window.elements[2].wires.metal
+    foam, copper = window.elements[0].material, window.elements[2].wires[0].metal
     assert_allclose(foam.permittivity(f), 1.07 * (1 + 2e-4j))
     assert_allclose(copper.permittivity(f).imag, 5.8e7 / (2 * np.pi * 10e9 * 8.8541878128e-12), rtol=1e-9)
     rings = window.elements[3].material
     assert_allclose(rings.permeability(f), 1 - 0.3 * 10e9 / 0.1e9 / 1j)
-    assert window.elements[3].wires.metal is None
+    assert window.elements[3].wires[0].metal is None
     ferrite = window.elements[5].elements[0].material
     assert_allclose((ferrite.permittivity(f)[0], ferrite.permeability(f)[0]), (12, 1.5))
     polymer = window.elements[5].elements[1].elements[0].material
@@ -113,7 +113,7 @@ def test_defaults_of_a_short_file():
     assert stack.sweep.polarizations == ("TE", "TM")
     assert stack.sweep.model == "nonlocal"
     assert stack.sweep.store == ("power", "amplitude")
-    assert parse_stack(SLAB.replace('ends = ["open", "open"]\n', "")).elements[0].wires.ends == (
+    assert parse_stack(SLAB.replace('ends = ["open", "open"]\n', "")).elements[0].wires[0].ends == (
         WireEnd("open"),
         WireEnd("open"),
     )
