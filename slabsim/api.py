@@ -7,7 +7,7 @@
     api.sweep(stack, "window.h5")                               # the map
     bands = api.find_bands(stack, angles_deg=[0, 30, 60])       # pass bands
     comparison = api.compare_models(stack)                      # local against nonlocal
-    lost = api.absorbed_by_element(stack, 30e9, 45.0, "TM")     # power lost in each layer
+    budget = api.power_budget(stack, 30e9, 45.0)                # power lost in each layer and set of wires
 
 Conventions (time factor exp(-i w t), amplitudes, signs) are stated in `slabsim.engine`. Frequencies are in Hz, angles
 in degrees.
@@ -16,6 +16,7 @@ in degrees.
 from __future__ import annotations
 
 import os
+from collections.abc import Iterable
 from pathlib import Path
 from typing import Any
 
@@ -23,6 +24,7 @@ import numpy as np
 
 from slabsim.analyses.comparison import Comparison, compare_models
 from slabsim.analyses.description import Description, describe_stack
+from slabsim.analyses.losses import PowerBudget, power_budget
 from slabsim.analyses.passbands import Band, BandList, Level, find_bands, read_level
 from slabsim.analyses.tracking import Track, follow_bands
 from slabsim.engine.fields import absorbed_by_element
@@ -44,6 +46,7 @@ from slabsim.store.comparison import Field, write_comparison
 from slabsim.store.reader import SweepMap, open_map
 from slabsim.sweeps.report import SweepReport
 from slabsim.sweeps.run import run_sweep
+from slabsim.units import parse
 
 __all__ = [
     "Band",
@@ -54,6 +57,7 @@ __all__ = [
     "Level",
     "MapError",
     "MaterialError",
+    "PowerBudget",
     "Response",
     "SlabsimError",
     "Solver",
@@ -75,6 +79,8 @@ __all__ = [
     "load_stack",
     "open_map",
     "parse_stack",
+    "power_budget",
+    "read_frequency",
     "read_level",
     "read_stack",
     "solve",
@@ -84,6 +90,7 @@ __all__ = [
 ]
 
 _SIGNATURE = b"\x89HDF\r\n\x1a\n"
+_NOTHING = 1e-12  # cross-polar power that counts as none
 _DATASETS = {"T": "transmittance", "R": "reflectance", "A": "absorptance"}
 
 
@@ -93,9 +100,24 @@ def solve(
     angles_deg: np.ndarray | float,
     model: Model | None = None,
     polarizations: tuple[Polarization, ...] | None = None,
+    azimuth_deg: float = 0.0,
 ) -> Response:
     """Amplitudes and powers on any grid of frequencies [Hz] and angles [degrees]; see `Solver.solve`."""
-    return Solver(stack, model, polarizations).solve(frequencies, angles_deg)
+    return Solver(stack, model, polarizations).solve(frequencies, angles_deg, azimuth_deg)
+
+
+def read_frequency(text: str) -> float:
+    """Frequency [Hz] of a text such as "10 GHz", "300 cm^-1" or "1.2 um".
+
+    Raises
+    ------
+    UnitError
+        If the text is no positive spectral quantity.
+    """
+    frequency = parse(text, "spectral")
+    if not frequency > 0.0:
+        raise UnitError(f'"{text}": a frequency must be greater than zero')
+    return frequency
 
 
 def sweep(stack: Stack, path: str | os.PathLike[str], **options: Any) -> SweepReport:
@@ -131,8 +153,10 @@ def draw_map(
     figure_path: str | os.PathLike[str],
     quantity: str | None = None,
     cut_angles_deg: list[float] | None = None,
+    azimuth_deg: float | None = None,
+    over_azimuth: bool = False,
 ) -> None:
-    """Draw one quantity of a map as heat maps and line cuts.
+    """Draw one quantity of a map as heat maps and line cuts; cross-polar ones where they are not zero.
 
     Parameters
     ----------
@@ -141,12 +165,16 @@ def draw_map(
     quantity : {"T", "R", "A"}, optional
         Default: transmittance; absorptance where there is none.
     cut_angles_deg : list of float, optional
-        Angles of the cuts [degrees].
+        Angles of the cuts [degrees]; with `over_azimuth` the one angle of incidence that is drawn.
+    azimuth_deg : float, optional
+        Which azimuth of the map [degrees], the nearest one; default: the first.
+    over_azimuth : bool
+        Draw frequency against azimuth, at one angle of incidence.
 
     Raises
     ------
     InputError
-        If the map does not hold the quantity.
+        If the map does not hold the quantity, or not the azimuth.
     """
     stack = load_stack(map_path)
     with open_map(map_path) as found:
@@ -154,11 +182,39 @@ def draw_map(
         name = _DATASETS.get(quantity, quantity)
         if name not in found.quantities:
             raise InputError(f"{map_path}: {_absence(stack, quantity)}")
-        panels = [(polarization, found.read(name, polarization)) for polarization in found.polarizations]
         state = "" if found.is_complete else " (unfinished)"
         title = f"{found.title or found.file_name}, {found.model} model{state}"
         unit = stack.sweep.spectral_unit
+        if over_azimuth:
+            column = _nearest(found.angles_deg, (cut_angles_deg or [float(found.angles_deg[0])])[0], "angle")
+            title += f", angle {found.angles_deg[column]:g} deg"
+            panels = _panels(found, name, range(found.azimuths_deg.size), slice(column, column + 1))
+            axis = "azimuth (deg)"
+            map_figure(figure_path, title, found.frequencies, found.azimuths_deg, panels, unit, name, angle_axis=axis)
+            return
+        row = 0 if azimuth_deg is None else _nearest(found.azimuths_deg, azimuth_deg, "azimuth")
+        if found.azimuths_deg.size > 1 or found.azimuths_deg[0] != 0.0:
+            title += f", azimuth {found.azimuths_deg[row]:g} deg"
+        panels = _panels(found, name, [row], slice(None))
         map_figure(figure_path, title, found.frequencies, found.angles_deg, panels, unit, name, cut_angles_deg)
+
+
+def _panels(found: SweepMap, name: str, azimuths: Iterable[int], angles: slice) -> list[tuple[str, np.ndarray]]:
+    """Values of each channel over frequency and angle, or azimuth; cross terms that are zero throughout left out."""
+    panels = []
+    for channel in found.polarizations if name == "absorptance" else found.channels:
+        parts = [found.read(name, channel, azimuth, angles=angles) for azimuth in azimuths]
+        values = np.concatenate(parts, axis=1)
+        if channel in found.polarizations or np.nanmax(values, initial=0.0) > _NOTHING:
+            panels.append((channel.replace("_", " "), values))
+    return panels
+
+
+def _nearest(values: np.ndarray, wanted: float, what: str) -> int:
+    low, high = float(values[0]), float(values[-1])
+    if not low <= wanted <= high:  # written so that NaN fails too
+        raise InputError(f"{what} = {wanted:g} deg; the map has {low:g} to {high:g} deg: choose one among these")
+    return int(np.argmin(abs(values - wanted)))
 
 
 def _absence(stack: Stack, quantity: str) -> str:
@@ -172,12 +228,13 @@ def _absence(stack: Stack, quantity: str) -> str:
 def draw_comparison(comparison: Comparison, stack: Stack, figure_path: str | os.PathLike[str]) -> None:
     """Draw the absolute difference of two models, with a line where it equals the tolerance."""
     trusted, other = comparison.models
+    names = [channel.replace("_", " ") for channel in comparison.channels]
     map_figure(
         figure_path,
         f"{stack.title or stack.file_name}: {other} against {trusted} model",
         comparison.frequencies,
         comparison.angles_deg,
-        list(zip(comparison.polarizations, abs(comparison.difference), strict=True)),
+        list(zip(names, abs(comparison.difference), strict=True)),
         stack.sweep.spectral_unit,
         f"difference of {_DATASETS[comparison.quantity]}",
         contour=comparison.tolerance,
@@ -192,6 +249,11 @@ def store_comparison(comparison: Comparison, map_path: str | os.PathLike[str]) -
         f"{name}_{trusted}": Field(comparison.powers[0], f"{name}, {trusted} model"),
         f"{name}_{other}": Field(comparison.powers[1], f"{name}, {other} model"),
     }
-    verdicts = {f"verdict_{polarization}": text for polarization, text in comparison.verdicts.items()}
-    attributes = {"tolerance": comparison.tolerance, "trusted_model": trusted, "other_model": other}
+    verdicts = {f"verdict_{channel}": text for channel, text in comparison.verdicts.items()}
+    attributes = {
+        "tolerance": comparison.tolerance,
+        "azimuth": comparison.azimuth_deg,
+        "trusted_model": trusted,
+        "other_model": other,
+    }
     write_comparison(map_path, fields, attributes | verdicts)

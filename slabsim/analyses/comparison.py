@@ -18,7 +18,7 @@ from slabsim.analyses.tracking import pair_bands
 from slabsim.analyses.verdict import verdict
 from slabsim.engine.response import Response, Solver
 from slabsim.errors import InputError
-from slabsim.stack.sample import Model, Polarization, Stack
+from slabsim.stack.sample import Channel, Model, Stack
 
 MODELS: tuple[Model, ...] = ("nonlocal", "local")
 TOLERANCE = 0.01  # in T
@@ -29,7 +29,7 @@ Angles = Sequence[float] | np.ndarray | None
 class AngleSummary:
     """Difference of the two models at one polarization and angle, over the frequencies of the sweep."""
 
-    polarization: Polarization
+    polarization: Channel
     angle_deg: float
     largest: float
     largest_at: float
@@ -40,7 +40,7 @@ class AngleSummary:
 class Region:
     """A connected region of the grid where the models differ by more than the tolerance."""
 
-    polarization: Polarization
+    polarization: Channel
     frequencies: tuple[float, float]
     angles_deg: tuple[float, float]
     largest: float
@@ -52,7 +52,7 @@ class Region:
 class EdgePair:
     """One pass band in both models at one polarization and angle; None where a model does not have it."""
 
-    polarization: Polarization
+    polarization: Channel
     angle_deg: float
     trusted: Band | None
     other: Band | None
@@ -69,8 +69,11 @@ class Comparison:
     quantity : {"T", "R", "A"}
     tolerance : float
     frequencies, angles_deg : float arrays, shape (n_freqs,), (n_angles,)
-    polarizations : tuple of {"TE", "TM"}
-    powers : tuple of float array, shape (n_pol, n_freqs, n_angles)
+    channels : tuple of {"TE", "TM", "TE_to_TM", "TM_to_TE"}
+        First axis of the powers; of absorptances the incident polarizations.
+    azimuth_deg : float
+        Of the plane of incidence [degrees].
+    powers : tuple of float array, shape (n_channels, n_freqs, n_angles)
         The quantity in each of the two models.
     angles : tuple of AngleSummary
     regions : tuple of Region
@@ -79,7 +82,7 @@ class Comparison:
     levels : tuple of BandList
         Band lists of both models, with their levels.
     verdicts : dict of str to str
-        One sentence per polarization.
+        One sentence per channel.
     """
 
     models: tuple[Model, Model]
@@ -87,17 +90,18 @@ class Comparison:
     tolerance: float
     frequencies: np.ndarray
     angles_deg: np.ndarray
-    polarizations: tuple[Polarization, ...]
+    channels: tuple[Channel, ...]
+    azimuth_deg: float
     powers: tuple[np.ndarray, np.ndarray]
     angles: tuple[AngleSummary, ...]
     regions: tuple[Region, ...]
     bands: tuple[EdgePair, ...]
     levels: tuple[BandList, ...]
-    verdicts: dict[Polarization, str]
+    verdicts: dict[Channel, str]
 
     @property
     def difference(self) -> np.ndarray:
-        """Other model minus trusted model, shape (n_pol, n_freqs, n_angles)."""
+        """Other model minus trusted model, shape (n_channels, n_freqs, n_angles)."""
         return self.powers[1] - self.powers[0]
 
 
@@ -107,6 +111,7 @@ def compare_models(
     tolerance: float = TOLERANCE,
     angles_deg: Angles = None,
     level: Level | None = None,
+    azimuth_deg: float | None = None,
 ) -> Comparison:
     """Compare two models of the wires over the sweep of a stack.
 
@@ -121,6 +126,8 @@ def compare_models(
         Angles at which pass bands are solved [degrees]; default: all of the sweep.
     level : Level, optional
         Of the pass bands; default: half of the peak.
+    azimuth_deg : float, optional
+        Of the plane of incidence [degrees]; default: the first of the sweep.
 
     Returns
     -------
@@ -134,14 +141,14 @@ def compare_models(
     if not 0.0 < tolerance < 1.0:
         raise InputError(f"tolerance = {tolerance}; it must lie between 0 and 1")
     sweep, quantity = stack.sweep, default_quantity(stack)
-    responses = [Solver(stack, model).solve(sweep.frequencies, sweep.angles_deg) for model in models]
+    azimuth = float(sweep.azimuths_deg[0]) if azimuth_deg is None else azimuth_deg
+    responses = [Solver(stack, model).solve(sweep.frequencies, sweep.angles_deg, azimuth) for model in models]
+    channels: tuple[Channel, ...] = responses[0].incident if quantity == "A" else responses[0].channels
     trusted, other = (_power(response, quantity) for response in responses)
     distance = abs(other - trusted)
-    lists = [_bands(stack, model, angles_deg, level) for model in models]
+    lists = [_bands(stack, model, angles_deg, level, azimuth) for model in models]
     regions = tuple(
-        region
-        for p, polarization in enumerate(sweep.polarizations)
-        for region in _regions(distance[p], polarization, stack, tolerance)
+        region for p, channel in enumerate(channels) for region in _regions(distance[p], channel, stack, tolerance)
     )
     return Comparison(
         models=models,
@@ -149,15 +156,16 @@ def compare_models(
         tolerance=tolerance,
         frequencies=sweep.frequencies,
         angles_deg=sweep.angles_deg,
-        polarizations=sweep.polarizations,
+        channels=channels,
+        azimuth_deg=azimuth,
         powers=(trusted, other),
-        angles=tuple(_summaries(distance, stack)),
+        angles=tuple(_summaries(distance, channels, stack)),
         regions=regions,
         bands=tuple(_edge_pairs(*lists)),
         levels=tuple(lists[0] + lists[1]),
         verdicts={
-            polarization: verdict(stack, polarization, distance[p], tolerance, quantity)
-            for p, polarization in enumerate(sweep.polarizations)
+            channel: verdict(stack, channel, distance[p], tolerance, quantity, azimuth)
+            for p, channel in enumerate(channels)
         },
     )
 
@@ -168,24 +176,24 @@ def _power(response: Response, quantity: Quantity) -> np.ndarray:
     return power
 
 
-def _bands(stack: Stack, model: Model, angles_deg: Angles, level: Level | None) -> list[BandList]:
+def _bands(stack: Stack, model: Model, angles_deg: Angles, level: Level | None, azimuth: float) -> list[BandList]:
     if stack.sweep.frequencies.size < 2:
         return []
-    return find_bands(stack, angles_deg, level, model=model)
+    return find_bands(stack, angles_deg, level, model=model, azimuths_deg=[azimuth])
 
 
-def _summaries(distance: np.ndarray, stack: Stack) -> Iterator[AngleSummary]:
+def _summaries(distance: np.ndarray, channels: tuple[Channel, ...], stack: Stack) -> Iterator[AngleSummary]:
     frequencies = stack.sweep.frequencies
-    for p, polarization in enumerate(stack.sweep.polarizations):
+    for p, channel in enumerate(channels):
         for a, angle in enumerate(stack.sweep.angles_deg):
             column = np.nan_to_num(distance[p, :, a])
             worst = int(np.argmax(column))
             yield AngleSummary(
-                polarization, float(angle), float(column[worst]), float(frequencies[worst]), float(column.mean())
+                channel, float(angle), float(column[worst]), float(frequencies[worst]), float(column.mean())
             )
 
 
-def _regions(distance: np.ndarray, polarization: Polarization, stack: Stack, tolerance: float) -> list[Region]:
+def _regions(distance: np.ndarray, channel: Channel, stack: Stack, tolerance: float) -> list[Region]:
     from scipy.ndimage import find_objects, label
 
     f, angles = stack.sweep.frequencies, stack.sweep.angles_deg
@@ -196,7 +204,7 @@ def _regions(distance: np.ndarray, polarization: Polarization, stack: Stack, tol
         i, j = np.unravel_index(int(np.argmax(inside)), inside.shape)
         regions.append(
             Region(
-                polarization=polarization,
+                polarization=channel,
                 frequencies=(float(f[rows.start]), float(f[rows.stop - 1])),
                 angles_deg=(float(angles[columns.start]), float(angles[columns.stop - 1])),
                 largest=float(inside[i, j]),

@@ -15,7 +15,7 @@ import numpy as np
 from slabsim.analyses.spectra import Line, Quantity, fine_spectrum
 from slabsim.engine.response import Solver
 from slabsim.errors import InputError
-from slabsim.stack.sample import Model, Polarization, Stack
+from slabsim.stack.sample import Channel, Model, Stack
 
 EDGE_TOLERANCE = 1e-12  # relative, of band edges; a band narrower than this cannot be resolved and is left out
 _NOISE = 1e-9  # relative height below which a maximum is rounding
@@ -85,15 +85,16 @@ class Band:
 
 @dataclass(frozen=True)
 class BandList:
-    """All pass bands of one polarization and angle, ascending, and the level they were found at."""
+    """All pass bands of one channel, angle and azimuth, ascending, and the level they were found at."""
 
-    polarization: Polarization
+    polarization: Channel
     angle_deg: float
     quantity: Quantity
     level: float
     skirt_level: float
     peak: float
     bands: tuple[Band, ...]
+    azimuth_deg: float = 0.0
 
 
 def read_level(text: str) -> Level:
@@ -125,8 +126,10 @@ def find_bands(
     level: Level | None = None,
     quantity: Quantity | None = None,
     model: Model | None = None,
+    azimuths_deg: Sequence[float] | np.ndarray | None = None,
+    cross: bool = False,
 ) -> list[BandList]:
-    """Pass bands per polarization and angle.
+    """Pass bands per polarization, azimuth and angle.
 
     Parameters
     ----------
@@ -140,11 +143,15 @@ def find_bands(
         Default: transmittance; absorptance where the stack ends in a perfect conductor.
     model : {"nonlocal", "local"}, optional
         Default: that of the sweep.
+    azimuths_deg : sequence of float, optional
+        Azimuths of the plane of incidence [degrees]; default: those of the sweep, or one if they are all alike.
+    cross : bool
+        Also what leaves in the other polarization, if the stack mixes them; each with a peak of its own.
 
     Returns
     -------
     list of BandList
-        Polarization by polarization, angle by angle.
+        Channel by channel, azimuth by azimuth, angle by angle.
 
     Raises
     ------
@@ -158,13 +165,20 @@ def find_bands(
     if quantity == "T" and stack.back is None:
         raise InputError("nothing is transmitted into a perfect conductor; ask for R or A")
     angles = stack.sweep.angles_deg if angles_deg is None else np.asarray(angles_deg, dtype=float)
-    found = []
-    for polarization in stack.sweep.polarizations:
-        solver = Solver(stack, model, (polarization,))
-        for angle in angles:
-            line = Line(solver, float(angle), quantity)
-            found.append(_bands_of(line, polarization, frequencies, level or Level()))
-    return found
+    azimuths = stack.sweep.azimuths_deg if azimuths_deg is None else np.asarray(azimuths_deg, dtype=float)
+    if not stack.depends_on_azimuth:
+        azimuths = azimuths[:1]
+    lines = []
+    for is_cross in (False, True) if cross and quantity != "A" else (False,):
+        for polarization in stack.sweep.polarizations:
+            solver = Solver(stack, model, (polarization,))
+            for channel in solver.channels[int(is_cross) : int(is_cross) + 1]:
+                lines += [
+                    (channel, Line(solver, float(angle), quantity, float(azimuth), is_cross))
+                    for azimuth in azimuths
+                    for angle in angles
+                ]
+    return [_bands_of(line, channel, frequencies, level or Level()) for channel, line in lines]
 
 
 def default_quantity(stack: Stack) -> Quantity:
@@ -172,7 +186,7 @@ def default_quantity(stack: Stack) -> Quantity:
     return "A" if stack.back is None else "T"
 
 
-def _bands_of(line: Line, polarization: Polarization, frequencies: np.ndarray, level: Level) -> BandList:
+def _bands_of(line: Line, channel: Channel, frequencies: np.ndarray, level: Level) -> BandList:
     f, power = _with_extrema(line, *fine_spectrum(line, frequencies))
     peak = float(power.max()) if power.size else float("nan")
     absolute = level.absolute(peak)
@@ -186,7 +200,9 @@ def _bands_of(line: Line, polarization: Polarization, frequencies: np.ndarray, l
         bands = [
             band for band in measured if band.width > EDGE_TOLERANCE * band.upper or band.cut_below or band.cut_above
         ]
-    return BandList(polarization, line.angle_deg, line.quantity, absolute, skirt, peak, tuple(bands))
+    return BandList(
+        channel, line.angle_deg, line.quantity, absolute, skirt, peak, tuple(bands), azimuth_deg=line.azimuth_deg
+    )
 
 
 def _with_extrema(line: Line, f: np.ndarray, power: np.ndarray) -> tuple[np.ndarray, np.ndarray]:

@@ -30,24 +30,32 @@ _OPAQUE = 1e-150  # amplitude below which there is nothing to see
 
 @dataclass(frozen=True)
 class Line:
-    """One quantity of one stack at one angle and polarization, as a function of frequency alone.
+    """One quantity of one stack at one angle, azimuth and channel, as a function of frequency alone.
 
     Parameters
     ----------
     solver : Solver
-        With this one polarization.
+        With one incident polarization.
     angle_deg : float
         Angle of incidence [degrees].
     quantity : {"T", "R", "A"}
+    azimuth_deg : float
+        Of the plane of incidence [degrees].
+    is_cross : bool
+        What leaves in the other polarization, in place of the own one.
     """
 
     solver: Solver
     angle_deg: float
     quantity: Quantity
+    azimuth_deg: float = 0.0
+    is_cross: bool = False
 
     @property
     def noise(self) -> float:
         """Power below which the quantity is rounding: A is a difference of numbers near 1, T and R are squares."""
+        if self.is_cross:  # exactly zero in many planes of incidence, but for rounding
+            return 1e-25
         return 1e-11 if self.quantity == "A" else 1e-290
 
     def power(self, frequencies: np.ndarray) -> np.ndarray:
@@ -60,8 +68,8 @@ class Line:
 
     def _solve(self, frequencies: np.ndarray, name: str) -> np.ndarray:
         frequencies = np.asarray(frequencies, dtype=float)
-        response = self.solver.solve(frequencies.ravel(), self.angle_deg)
-        return getattr(response, name)[0, :, 0].reshape(frequencies.shape)
+        response = self.solver.solve(frequencies.ravel(), self.angle_deg, self.azimuth_deg)
+        return getattr(response, name)[int(self.is_cross), :, 0].reshape(frequencies.shape)
 
 
 def fine_spectrum(line: Line, frequencies: np.ndarray) -> tuple[np.ndarray, np.ndarray]:

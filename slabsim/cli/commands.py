@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 if TYPE_CHECKING:
-    from slabsim.stack.sample import Stack
+    pass
 
 app = typer.Typer(
     name="slabsim",
@@ -28,6 +28,9 @@ LevelText = Annotated[
 ]
 Angles = Annotated[
     list[float] | None, typer.Option("--angle", help="Angle in degrees; may be given again. Default: up to ten.")
+]
+Azimuth = Annotated[
+    float | None, typer.Option("--azimuth", help="Azimuth in degrees. Default: the first of the sweep.")
 ]
 Replace = Annotated[bool, typer.Option("--replace", help="Replace an existing map.")]
 _MOST_ANGLES = 10
@@ -79,7 +82,10 @@ def sweep(
         raise type(stop)(_with_stack(str(stop), stack, target)) from stop
     typer.echo(_with_stack(str(report), stack, target))
     if report.n_computed:
-        points = f"{_count(report.n_points, 'point')} by {_count(len(sample.sweep.polarizations), 'polarization')}"
+        channels = _count(len(sample.sweep.polarizations), "polarization")
+        if sample.mixes_polarizations:
+            channels += " and their cross terms"
+        points = f"{_count(report.n_points, 'point')} by {channels}"
         typer.echo(f"{points}, {sample.sweep.model} model, {perf_counter() - start:.1f} s")
     if not report.is_complete:
         raise typer.Exit(1)
@@ -91,10 +97,15 @@ def passbands(
     level: LevelText = "0.5 of peak",
     quantity: Annotated[str | None, typer.Option(help="T, R or A. Default: T, or A on a metal back.")] = None,
     angle: Angles = None,
+    azimuth: Annotated[
+        list[float] | None,
+        typer.Option("--azimuth", help="Azimuth in degrees; may be given again. Default: up to four."),
+    ] = None,
+    cross: Annotated[bool, typer.Option("--cross", help="Also the bands of the other polarization.")] = False,
     model: Annotated[str | None, typer.Option(help="nonlocal or local. Default: that of the source.")] = None,
     csv: Annotated[Path | None, typer.Option(help="Also write the bands to this file, in SI units.")] = None,
 ) -> None:
-    """Print the pass bands per polarization and angle.
+    """Print the pass bands per polarization, azimuth and angle.
 
     Every band where the power exceeds a level, and how its edges shift with angle.
     """
@@ -104,21 +115,34 @@ def passbands(
 
     sample = api.load_stack(source)
     announce_compilation()
-    chosen = angle or _some_angles(sample)
-    lists = api.find_bands(sample, sorted(set(chosen)), api.read_level(level), _quantity(quantity), _model(model))
+    chosen, turns = angle or _some(sample.sweep.angles_deg), azimuth or _some(sample.sweep.azimuths_deg, 4)
+    lists = api.find_bands(
+        sample,
+        sorted(set(chosen)),
+        api.read_level(level),
+        _quantity(quantity),
+        _model(model),
+        azimuths_deg=sorted(set(turns)),
+        cross=cross,
+    )
     unit = sample.sweep.spectral_unit
     typer.echo(f"{sample.title or sample.file_name}: {model or sample.sweep.model} model, level {level}")
     tables.show(tables.band_table(lists, unit))
+    groups: dict[str, list[Any]] = {}
+    for found in lists:
+        words = found.polarization.replace("_", " ")
+        if len({one.azimuth_deg for one in lists}) > 1:
+            words += f", azimuth {found.azimuth_deg:g} deg"
+        groups.setdefault(words, []).append(found)
     tracks = [
-        (polarization, track)
-        for polarization in sample.sweep.polarizations
-        for track in api.follow_bands([found for found in lists if found.polarization == polarization])
-        if len(track.bands) > 1
+        (words, track) for words, group in groups.items() for track in api.follow_bands(group) if len(track.bands) > 1
     ]
     if tracks:
         tables.show(tables.shift_table(tracks, unit))
     if not angle and len(chosen) < sample.sweep.angles_deg.size:
         typer.echo(f"{len(chosen)} of the {sample.sweep.angles_deg.size} angles of the sweep; others with --angle")
+    if not azimuth and sample.depends_on_azimuth and len(turns) < sample.sweep.azimuths_deg.size:
+        typer.echo(f"{len(turns)} of the {sample.sweep.azimuths_deg.size} azimuths of the sweep; others with --azimuth")
     if csv:
         _write(csv, tables.bands_as_csv(lists))
 
@@ -129,6 +153,7 @@ def compare(
     tolerance: Annotated[float, typer.Option(help="Largest difference of power that counts as agreement.")] = 0.01,
     level: LevelText = "0.5 of peak",
     angle: Angles = None,
+    azimuth: Azimuth = None,
     output: Annotated[
         Path | None, typer.Option("--output", "-o", help="Map that takes the differences. Default: see below.")
     ] = None,
@@ -149,7 +174,7 @@ def compare(
 
     sample = api.load_stack(source)
     announce_compilation()
-    chosen = sorted(set(angle or _some_angles(sample)))
+    chosen = sorted(set(angle or _some(sample.sweep.angles_deg)))
     is_in_place = api.is_map(source) and (output is None or output == source)
     target = source if is_in_place else output or Path(source.stem + "_compare.h5")
     if not is_in_place and target.exists() and not replace:
@@ -157,11 +182,14 @@ def compare(
     if figure:
         check_suffix(figure)
     # everything is computed before a map is made or replaced: an error leaves the files as they were
-    comparison = api.compare_models(sample, tolerance=tolerance, angles_deg=chosen, level=api.read_level(level))
+    comparison = api.compare_models(
+        sample, tolerance=tolerance, angles_deg=chosen, level=api.read_level(level), azimuth_deg=azimuth
+    )
     if not is_in_place:
         api.sweep(sample, target, replace=replace)
     api.store_comparison(comparison, target)
-    typer.echo(f"{sample.title or sample.file_name}: level {level}")
+    turn = f", azimuth {comparison.azimuth_deg:g} deg" if sample.depends_on_azimuth else ""
+    typer.echo(f"{sample.title or sample.file_name}: level {level}{turn}")
     tables.show(tables.comparison_tables(comparison, sample.sweep.spectral_unit))
     typer.echo(f"differences in {target} (/entry/comparison)")
     drawn = figure or Path(source.stem + "_compare.png")
@@ -173,6 +201,32 @@ def compare(
         typer.echo(f"no figure: {error}")
     else:
         typer.echo(f"figure {drawn}")
+
+
+@app.command()
+def losses(
+    source: Source,
+    frequency: Annotated[str, typer.Option(help='Such as "10 GHz", "300 cm^-1" or "1.2 um".')],
+    angle: Annotated[float, typer.Option(help="Angle of incidence in degrees.")] = 0.0,
+    azimuth: Azimuth = None,
+    model: Annotated[str | None, typer.Option(help="nonlocal or local. Default: that of the source.")] = None,
+) -> None:
+    """Print where the incident power goes at one point.
+
+    Out in each polarization, and into each layer, sheet and set of wires.
+    """
+    from slabsim import api
+    from slabsim.cli.progress import announce_compilation
+    from slabsim.report import tables
+
+    sample = api.load_stack(source)
+    f = api.read_frequency(frequency)
+    announce_compilation()
+    budget = api.power_budget(sample, f, angle, azimuth, _model(model))
+    turn = f", azimuth {budget.azimuth_deg:g} deg" if sample.depends_on_azimuth else ""
+    where = f"{frequency}, {angle:g} deg{turn}"
+    typer.echo(f"{sample.title or sample.file_name}: {where}, {budget.model} model")
+    tables.show(tables.loss_table(budget))
 
 
 @app.command()
@@ -198,12 +252,24 @@ def plot(
     angle: Annotated[
         list[float] | None, typer.Option("--angle", help="Angle of a line cut; may be given again.")
     ] = None,
+    azimuth: Azimuth = None,
+    over: Annotated[
+        str, typer.Option(help="angle, or azimuth: frequency against azimuth, at the one --angle.")
+    ] = "angle",
 ) -> None:
-    """Draw a map as heat maps and line cuts."""
+    """Draw a map as heat maps and line cuts.
+
+    The powers that leave in the other polarization are drawn where there are any.
+    """
     from slabsim import api
 
     target = output or Path(map_file.stem + ".png")
-    api.draw_map(map_file, target, _quantity(quantity), angle)
+    over_azimuth = _choice(over, "--over", ("angle", "azimuth")) == "azimuth"
+    if over_azimuth and azimuth is not None:
+        raise typer.BadParameter("with --over azimuth all azimuths are drawn", param_hint="--azimuth")
+    if over_azimuth and angle and len(angle) > 1:
+        raise typer.BadParameter("with --over azimuth there is one angle", param_hint="--angle")
+    api.draw_map(map_file, target, _quantity(quantity), angle, azimuth, over_azimuth)
     typer.echo(str(target))
 
 
@@ -226,10 +292,9 @@ def schema(
         typer.echo(text)
 
 
-def _some_angles(sample: Stack) -> list[float]:
-    """Up to ten angles of the sweep, evenly spread, first and last among them."""
-    angles = sample.sweep.angles_deg
-    count = min(_MOST_ANGLES, angles.size)
+def _some(angles: Any, most: int = _MOST_ANGLES) -> list[float]:
+    """Up to `most` of the angles, evenly spread, first and last among them."""
+    count = min(most, angles.size)
     return [float(angles[i]) for i in sorted({round(k * (angles.size - 1) / max(count - 1, 1)) for k in range(count)})]
 
 

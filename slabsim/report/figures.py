@@ -33,6 +33,7 @@ def map_figure(
     label: str,
     cut_angles_deg: Sequence[float] | None = None,
     contour: float | None = None,
+    angle_axis: str = "angle of incidence (deg)",
 ) -> None:
     """Draw heat maps over frequency and angle, one per panel, with line cuts below.
 
@@ -57,6 +58,8 @@ def map_figure(
         Angles of the cuts [degrees], the nearest of the grid are taken; default: up to five, evenly spread.
     contour : float, optional
         Value to draw a line at in the maps.
+    angle_axis : str
+        Name of the axis of angles.
 
     Raises
     ------
@@ -84,6 +87,7 @@ def map_figure(
     figure.suptitle(title)
     if has_map:
         _draw_maps(figure, axes[0], x, angles_deg, panels, label, contour)
+        axes[0][0].set_ylabel(angle_axis)
     top = _top(panels)
     for axis, (name, values) in zip(axes[-1], panels, strict=True):
         if frequencies.size > 1:
@@ -91,7 +95,7 @@ def map_figure(
             axis.set_xlabel(f"{_axis_name(unit)} ({unit})")
         else:
             axis.plot(angles_deg, values[0], "-o", color="0.0", markersize=3.0, label=f"{x[0]:g} {unit}")
-            axis.set_xlabel("angle of incidence (deg)")
+            axis.set_xlabel(angle_axis)
         axis.legend(fontsize="small", handlelength=3.2)
         axis.set(title="" if has_map else name, ylim=(-0.02 * top, 1.05 * top))
         axis.grid(alpha=0.3)
@@ -139,7 +143,6 @@ def _draw_maps(
         if contour is not None and np.nanmin(values) < contour < np.nanmax(values):
             axis.contour(x, angles_deg, values.T, levels=[contour], colors="white", linewidths=1.0)
             axis.set_title(f"{name}, white line at {contour:g}")
-    axes[0].set_ylabel("angle of incidence (deg)")
     figure.colorbar(image, ax=list(axes), label=label)
 
 

@@ -15,6 +15,7 @@ from rich.text import Text
 
 from slabsim.analyses.comparison import AngleSummary, Comparison, EdgePair
 from slabsim.analyses.description import Description, WireNumbers
+from slabsim.analyses.losses import PowerBudget
 from slabsim.analyses.passbands import SKIRT, Band, BandList
 from slabsim.analyses.tracking import Track
 from slabsim.report.columns import ColumnTable, fact_table
@@ -23,6 +24,7 @@ from slabsim.units import format_frequency, format_length, format_spectral, from
 _WORDS = {"T": "transmittance", "R": "reflectance", "A": "absorptance"}
 _DIGITS = 7
 _PIPE_WIDTH = 240
+_LOSS_ROUNDING = 1e-12  # share of the incident power below which a loss is rounding
 _ROUNDING = 1e-9  # differences below it have no place worth naming
 Item = TypeVar("Item")
 
@@ -37,21 +39,24 @@ def band_table(lists: Sequence[BandList], unit: str) -> RenderableType:
         Spectral unit of all edges.
     """
     quantity = lists[0].quantity if lists else "T"
+    has_azimuths = len({found.azimuth_deg for found in lists}) > 1
     loss = "loss dB" if quantity == "T" else "below 1, dB"
     table = ColumnTable([
-        ("pol", "left"), ("angle (deg)", "right"), (f"level {quantity}", "right"), (f"lower ({unit})", "right"),
+        ("pol", "left"), *([("azimuth (deg)", "right")] if has_azimuths else []),
+        ("angle (deg)", "right"), (f"level {quantity}", "right"), (f"lower ({unit})", "right"),
         (f"upper ({unit})", "right"), (f"centre ({unit})", "right"), (f"width ({unit})", "right"), ("width %", "right"),
         ("peak", "right"), (loss, "right"), ("ripple dB", "right"), ("shape", "right"), ("note", "left"),
-    ], n_keys=2)  # fmt: skip
+    ], n_keys=3 if has_azimuths else 2)  # fmt: skip
     for before, found in zip([None, *lists], lists, strict=False):
         if before is not None and before.polarization != found.polarization:
             table.add_section()
-        head: tuple[str, ...] = (found.polarization, f"{found.angle_deg:g}", f"{found.level:.4g}")
+        azimuth = [f"{found.azimuth_deg:g}"] if has_azimuths else []
+        head: tuple[str, ...] = (_words(found.polarization), *azimuth, f"{found.angle_deg:g}", f"{found.level:.4g}")
         if not found.bands:
             table.add_row(*head, *["-"] * 9, f"no band: {quantity} is at most {found.peak:.3g}")
         for band in _ascending(found.bands, unit):
             table.add_row(*head, *_band_cells(band, unit))
-            head = ("", "", "")
+            head = ("",) * len(head)
     notes = [
         f"shape: width at {SKIRT:g} of the level ({-10 * log10(SKIRT):.0f} dB below it) over width at the level; "
         "- where that is not reached.",
@@ -69,7 +74,8 @@ def shift_table(tracks: Sequence[tuple[str, Track]], unit: str) -> RenderableTyp
 
     Parameters
     ----------
-    tracks : sequence of (polarization, Track)
+    tracks : sequence of (words, Track)
+        The words say which channel, and at which azimuth.
     unit : str
     """
     table = ColumnTable([
@@ -99,7 +105,7 @@ def comparison_tables(comparison: Comparison, unit: str, most: int = 6) -> Rende
     trusted, other = comparison.models
     difference = f"Difference of {comparison.quantity}, {other} minus {trusted}, over the sweep"
     part = f"they part by more than {comparison.tolerance:g}"
-    verdicts = [Text(f"{polarization}: {sentence}") for polarization, sentence in comparison.verdicts.items()]
+    verdicts = [Text(f"{_words(channel)}: {sentence}") for channel, sentence in comparison.verdicts.items()]
     return Group(
         _titled(f"Bands in the {trusted} and the {other} model ({unit})", _pair_table(comparison, unit))
         if comparison.bands
@@ -132,7 +138,7 @@ def _difference_table(comparison: Comparison, unit: str, most: int) -> ColumnTab
     ], n_keys=2)  # fmt: skip
     for row in _chosen(comparison, most):
         table.add_row(
-            row.polarization,
+            _words(row.polarization),
             f"{row.angle_deg:g}",
             f"{row.largest:.3g}",
             _value(row.largest_at, unit) if row.largest > _ROUNDING else "-",
@@ -150,7 +156,7 @@ def _region_table(comparison: Comparison, unit: str, most: int) -> ColumnTable:
         low, high = sorted(from_hz(f, unit) for f in region.frequencies)
         share = f"{100 * region.share:.2f} %" if region.share >= 5e-5 else "< 0.01 %"
         table.add_row(
-            region.polarization,
+            _words(region.polarization),
             f"{low:.{_DIGITS}g}",
             f"{high:.{_DIGITS}g}",
             " to ".join(f"{angle:g}" for angle in dict.fromkeys(region.angles_deg)),
@@ -175,6 +181,7 @@ def description_tables(description: Description, unit: str) -> RenderableType:
         Text(
             f"sweep {_range([format_spectral(f, unit) for f in ends], sweep.frequencies.size)}, "
             f"angle {_range([f'{angle:g} deg' for angle in sweep.angles_deg[[0, -1]]], sweep.angles_deg.size)}, "
+            f"{_azimuths(description)}"
             f"{' and '.join(sweep.polarizations)}, {sweep.model} model"
         ),
     ]
@@ -192,7 +199,15 @@ def description_tables(description: Description, unit: str) -> RenderableType:
         Text(),
         _titled("Stack, front to back", table),
         *(_wire_block(numbers, unit, ends) for numbers in description.wires),
+        *(Text(note) for note in description.notes),
     )
+
+
+def _azimuths(description: Description) -> str:
+    azimuths = description.stack.sweep.azimuths_deg
+    if not description.stack.depends_on_azimuth and azimuths.size == 1:
+        return ""
+    return f"azimuth {_range([f'{azimuth:g} deg' for azimuth in azimuths[[0, -1]]], azimuths.size)}, "
 
 
 def show(renderable: RenderableType, console: Console | None = None) -> None:
@@ -214,8 +229,8 @@ def bands_as_csv(lists: Iterable[BandList]) -> str:
     out = io.StringIO()
     writer = csv.writer(out, lineterminator="\n")
     writer.writerow([
-        "polarization", "angle (deg)", "quantity", "level", "lower (Hz)", "upper (Hz)", "centre (Hz)", "width (Hz)",
-        "fractional width", "peak", "peak at (Hz)", "insertion loss (dB)", "ripple (dB)", "shape factor",
+        "polarization", "azimuth (deg)", "angle (deg)", "quantity", "level", "lower (Hz)", "upper (Hz)", "centre (Hz)",
+        "width (Hz)", "fractional width", "peak", "peak at (Hz)", "insertion loss (dB)", "ripple (dB)", "shape factor",
         "cut below", "cut above",
     ])  # fmt: skip
     for found in lists:
@@ -226,8 +241,39 @@ def bands_as_csv(lists: Iterable[BandList]) -> str:
             )  # fmt: skip
             text = [f"{number + 0.0:.15g}" for number in numbers]  # no -0
             flags = [int(band.cut_below), int(band.cut_above)]
-            writer.writerow([found.polarization, f"{found.angle_deg:g}", found.quantity, *text, *flags])
+            angles = [f"{found.azimuth_deg:g}", f"{found.angle_deg:g}"]
+            writer.writerow([found.polarization, *angles, found.quantity, *text, *flags])
     return out.getvalue()
+
+
+def loss_table(budget: PowerBudget) -> RenderableType:
+    """Where the incident power goes, in percent of it."""
+    table = ColumnTable([
+        ("", "right"), ("element", "left"), ("part", "left"),
+        *((f"{polarization} (%)", "right") for polarization in budget.polarizations),
+    ], n_keys=3)  # fmt: skip
+    for name, shares in budget.channels:
+        table.add_row("", name, "", *(f"{100 * share:.6g}" for share in shares))
+    table.add_section()
+    for loss in budget.losses:
+        place = "" if loss.part else str(loss.element + 1)
+        name = f'"{loss.name}"' if loss.name else ""
+        table.add_row(place, "" if loss.part else name, loss.part, *(_percent(share) for share in loss.shares))
+    table.add_section()
+    table.add_row("", "sum", "", *(f"{100 * total:.6g}" for total in budget.totals))
+    note = (
+        "wires: lost in the metal, a share of the row above it. The rest of a row is lost in the host, and in loads at "
+        "the wire ends."
+    )
+    return Group(table, Text(note), Text()) if any(loss.part for loss in budget.losses) else Group(table, Text())
+
+
+def _percent(share: float) -> str:
+    return "0" if abs(share) < _LOSS_ROUNDING else f"{100 * share:.6g}"
+
+
+def _words(channel: str) -> str:
+    return channel.replace("_", " ")
 
 
 def _wire_block(numbers: WireNumbers, unit: str, ends: tuple[float, ...]) -> RenderableType:
@@ -240,16 +286,17 @@ def _wire_block(numbers: WireNumbers, unit: str, ends: tuple[float, ...]) -> Ren
             edge += f" = {format_spectral(value.frequency, unit)}"
         plasma.add_row(value.formula, f"{value.kp:.6g}", edge, "used" if value.is_used else "")
     facts = fact_table(_wire_facts(numbers, [format_spectral(end, unit, 4) for end in ends]))
-    return Group(Text(f'Wires of "{numbers.layer}"', style="bold"), facts, plasma)
+    return Group(Text(f'{numbers.title} of "{numbers.layer}"', style="bold"), facts, plasma)
 
 
 def _wire_facts(numbers: WireNumbers, ends: list[str]) -> list[tuple[str, str]]:
     """Name and value of each derived number, at the one or two `ends` of the sweep."""
     wires = numbers.wires
-    pitch = " by ".join(format_length(side) for side in dict.fromkeys(wires.pitch))
+    sides = (wires.pitch,) if isinstance(wires.pitch, float) else wires.pitch
+    pitch = " by ".join(format_length(side) for side in dict.fromkeys(sides))
     metal = "perfect conductor" if wires.metal is None else wires.metal.name
     facts = [
-        ("wires", f"pitch {pitch}, radius {format_length(wires.radius)}, {metal}"),
+        ("wires", f"{numbers.direction}, pitch {pitch}, radius {format_length(wires.radius)}, {metal}"),
         ("fill fraction", f"{numbers.fill_fraction:.4g}"),
         (
             "pitch over wavelength in host",
@@ -257,12 +304,15 @@ def _wire_facts(numbers: WireNumbers, ends: list[str]) -> list[tuple[str, str]]:
         ),
         ("thickness over wavelength in host", _at(ends, [f"{v:.4g}" for v in numbers.thickness_over_wavelength])),
     ]
+    if numbers.stiffness is not None:
+        facts.append(("stiffness l0", f"{numbers.stiffness:.4g} (charge on the joined wires over that on one set)"))
     if numbers.skin_depth and numbers.impedance:
         for end, skin, z in zip(ends, numbers.skin_depth, numbers.impedance, strict=False):
             depth = f"skin depth {format_length(skin, 4)} = {skin / wires.radius:.3g} radii"
             facts.append((f"metal at {end}", f"{depth}; wire impedance {_complex(z)} ohm/m"))
     facts.append(("local eps along the wires", _at(ends, [_complex(value) for value in numbers.local_eps])))
-    facts.append(("TEM loss over one pass, with host", _at(ends, [f"{v:.4g} dB" for v in numbers.tem_loss_db])))
+    if numbers.tem_loss_db:
+        facts.append(("TEM loss over one pass, with host", _at(ends, [f"{v:.4g} dB" for v in numbers.tem_loss_db])))
     return facts
 
 
@@ -335,7 +385,7 @@ def _band_cells(band: Band, unit: str) -> list[str]:
 
 def _pair_cells(pair: EdgePair, unit: str) -> list[str]:
     edges = [None if band is None else _edges(band, unit) for band in (pair.trusted, pair.other)]
-    cells = [pair.polarization, f"{pair.angle_deg:g}"]
+    cells = [_words(pair.polarization), f"{pair.angle_deg:g}"]
     for side in (0, 1):
         trusted, other = (None if both is None else both[side] for both in edges)
         cells += ["no band" if edge is None else edge.text for edge in (trusted, other)]
@@ -344,9 +394,9 @@ def _pair_cells(pair: EdgePair, unit: str) -> list[str]:
 
 
 def _chosen(comparison: Comparison, most: int) -> Iterator[AngleSummary]:
-    """Rows of at most `most` angles per polarization, first and last among them."""
-    for polarization in comparison.polarizations:
-        rows = [row for row in comparison.angles if row.polarization == polarization]
+    """Rows of at most `most` angles per channel, first and last among them."""
+    for channel in comparison.channels:
+        rows = [row for row in comparison.angles if row.polarization == channel]
         count = min(most, len(rows))
         places = {round(i * (len(rows) - 1) / max(count - 1, 1)) for i in range(count)}
         yield from (row for place, row in enumerate(rows) if place in places)

@@ -282,7 +282,12 @@ class Stack:
     @property
     def mixes_polarizations(self) -> bool:
         """Whether TE may turn into TM and back: some element tells one direction parallel to the faces from another."""
-        return any(_tells_directions(element) for element in dict.fromkeys(self.flatten()))
+        return any(_tells_directions(element) for element in self.flatten())
+
+    @property
+    def depends_on_azimuth(self) -> bool:
+        """Whether the response may differ from one azimuth to another."""
+        return self.mixes_polarizations or any(isinstance(element, Plates) for element in self.flatten())
 
     @property
     def channels(self) -> tuple[Channel, ...]:

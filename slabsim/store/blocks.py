@@ -32,10 +32,11 @@ class Place:
 
 
 class BlockResponse(Protocol):
-    """The response at the points of one block; arrays of shape (n_polarizations, n_freqs, n_angles).
+    """The response at the points of one block; arrays of shape (n_channels, n_freqs, n_angles).
 
     1. `r`, `t`: complex amplitudes; `t` is None in front of a perfect conductor.
-    2. `R`, `T`, `A`: shares reflected, transmitted, absorbed; `T` is None where `t` is.
+    2. `R`, `T`, `A`: shares reflected, transmitted, absorbed; `T` is None where `t` is, and `A` has one row for each
+       incident polarization.
     """
 
     @property

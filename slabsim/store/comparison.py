@@ -19,11 +19,11 @@ from slabsim.store.failures import failures_explained, is_held
 from slabsim.store.reader import open_map
 from slabsim.store.room import allocation_end, reserve, trim
 
-_AXES = ("polarization", "frequency", "angle")
+_GRID = ("frequency", "angle")
 
 
 class Field(NamedTuple):
-    """A difference over the grid: `values` of shape (n_polarizations, n_freqs, n_angles), its name and unit."""
+    """A difference over the grid: `values`, shape (n_channels or n_polarizations, n_freqs, n_angles), name and unit."""
 
     values: np.ndarray
     long_name: str
@@ -76,10 +76,12 @@ def _check_fields(target: Path, fields: Mapping[str, Field]) -> None:
     if not fields:
         raise InputError("fields is empty; a comparison needs at least one field")
     with open_map(target) as found:
-        shape = (len(found.polarizations), found.frequencies.size, found.angles_deg.size)
+        grid = (found.frequencies.size, found.angles_deg.size)
+        shapes = [(len(rows), *grid) for rows in (found.channels, found.polarizations)]
+    first = np.shape(next(iter(fields.values())).values)
     for name, field in fields.items():
-        if np.shape(field.values) != shape:
-            raise InputError(f"field {name!r} has shape {np.shape(field.values)}; {target} needs {shape}")
+        if np.shape(field.values) not in shapes or np.shape(field.values) != first:
+            raise InputError(f"field {name!r} has shape {np.shape(field.values)}; {target} needs {shapes[0]}")
 
 
 def _write(file: h5py.File, fields: Mapping[str, Field], attributes: Mapping[str, Any]) -> None:
@@ -87,10 +89,15 @@ def _write(file: h5py.File, fields: Mapping[str, Field], attributes: Mapping[str
         del file[layout.COMPARISON]
     group = file.create_group(layout.COMPARISON, track_order=True)
     signal, *others = fields
-    name_axes(group, signal, _AXES, others)
+    data, n_rows = file[layout.DATA], np.shape(fields[signal].values)[0]
+    rows = "polarization" if data["polarization"].size == n_rows else "incident"
+    if rows not in data:
+        raise InputError('a difference of absorptances needs a map that keeps powers: store = ["power"]')
+    axes = (rows, *_GRID)
+    name_axes(group, signal, axes, others)
     group.attrs.update(attributes)
-    scales = [file[layout.DATA][name] for name in _AXES]
-    for name, scale in zip(_AXES, scales, strict=True):
+    scales = [data[name] for name in axes]
+    for name, scale in zip(axes, scales, strict=True):
         group[name] = scale
     for name, field in fields.items():
         dataset = group.create_dataset(

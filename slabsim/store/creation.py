@@ -66,7 +66,7 @@ def build(
 def block_size(stack: Stack, plan: Plan) -> int:
     """Most bytes that a block takes in the file."""
     chunk = 8 * int(np.prod(plan.block_shape)) + 4  # 4: checksum; chunks at the far edge are whole, too
-    return chunk * len(stack.sweep.polarizations) * (len(layout.quantities(stack)) + 1)  # 1: the 2-D copies
+    return chunk * len(stack.channels) * (len(layout.quantities(stack)) + 1)  # 1: the 2-D copies
 
 
 def empty_size(stack: Stack, plan: Plan) -> int:
@@ -74,7 +74,7 @@ def empty_size(stack: Stack, plan: Plan) -> int:
     texts = len(stack.text.encode()) + sum(len(text.encode()) for text in stack.tables.values())
     axes = 8 * (stack.sweep.frequencies.size + stack.sweep.angles_deg.size + stack.sweep.azimuths_deg.size)
     # 16: index entry of a chunk
-    n_entries = int(np.prod(plan.block_counts)) * len(stack.sweep.polarizations) * 8
+    n_entries = int(np.prod(plan.block_counts)) * len(stack.channels) * 8
     return block_size(stack, plan) + texts + axes + 16 * n_entries + 65536
 
 
@@ -83,14 +83,15 @@ def full_size(stack: Stack, plan: Plan) -> int:
     return empty_size(stack, plan) + int(np.prod(plan.block_counts)) * block_size(stack, plan)
 
 
-def write_axis(group: h5py.Group, axis: layout.Axis, values: np.ndarray) -> None:
+def write_axis(group: h5py.Group, axis: layout.Axis, stack: Stack) -> None:
     """Write one axis as a dimension scale."""
-    dataset = group.create_dataset(axis.name, data=np.asarray(values, dtype=axis.dtype))
+    dataset = group.create_dataset(axis.name, data=np.asarray(axis.values(stack), dtype=axis.dtype))
     dataset.make_scale(axis.name)
     dataset.attrs.update(units=axis.units, long_name=axis.long_name)
     if axis.flag_meanings:
-        codes = np.arange(len(axis.flag_meanings.split()), dtype=axis.dtype)
-        dataset.attrs.update(flag_values=codes, flag_meanings=axis.flag_meanings)
+        meanings = axis.flag_meanings(stack)
+        codes = np.arange(len(meanings.split()), dtype=axis.dtype)
+        dataset.attrs.update(flag_values=codes, flag_meanings=meanings)
 
 
 def describe(dataset: h5py.Dataset, scales: list[h5py.Dataset], long_name: str, units: str) -> None:
@@ -120,7 +121,7 @@ def _write_data(file: h5py.File, stack: Stack, plan: Plan, filters: dict[str, An
     used = {name for quantity in kept for name in quantity.axes}
     for axis in layout.AXES:
         if axis.name in used:
-            write_axis(group, axis, axis.values(stack.sweep))
+            write_axis(group, axis, stack)
     if "incident" in used:
         group.attrs["incident_indices"] = np.int32(1)
     for quantity in kept:
@@ -136,7 +137,7 @@ def _write_plot(file: h5py.File, stack: Stack, plan: Plan, filters: dict[str, An
     group = file.create_group(layout.PLOT, track_order=True)
     quantity = layout.plotted(stack)
     # TM first: wires along z act on TM alone
-    shown = sorted(stack.sweep.polarizations, reverse=True)
+    shown = [*sorted(stack.sweep.polarizations, reverse=True), *stack.channels[len(stack.sweep.polarizations) :]]
     names = [layout.plot_name(quantity, polarization) for polarization in shown]
     name_axes(group, names[0], ("frequency", "angle"), names[1:])
     scales = [file[f"{layout.DATA}/{name}"] for name in ("frequency", "angle")]
@@ -145,7 +146,7 @@ def _write_plot(file: h5py.File, stack: Stack, plan: Plan, filters: dict[str, An
     for name, polarization in zip(names, shown, strict=True):
         shape = tuple(scale.size for scale in scales)
         dataset = group.create_dataset(name, shape, quantity.dtype, chunks=plan.block_shape, **filters)
-        describe(dataset, scales, f"{polarization} {quantity.name}", quantity.units)
+        describe(dataset, scales, f"{polarization.replace('_', ' ')} {quantity.name}", quantity.units)
         dataset[0, 0] = np.nan
     group["title"] = f"{stack.title}: {quantity.name}, azimuth {stack.sweep.azimuths_deg[0]:g} degree"
 

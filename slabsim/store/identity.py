@@ -60,7 +60,7 @@ class Identity:
             read_text(file[f"{layout.STACK_NOTE}/data"]),
             read_tables(file),
             {name: data[name][()] for name in ("frequency", "angle", "azimuth")},
-            tuple(layout.POLARIZATIONS[code] for code in data["polarization"][()]),
+            tuple(name for name in read_channels(file) if name in layout.POLARIZATIONS),
             read_text(file[f"{layout.MODELS}/wire_medium"]),
             tuple(sorted(kinds)),
         )
@@ -95,6 +95,11 @@ class Identity:
 def digest(stack: Stack) -> str:
     """SHA-256 of the computation that a stack asks for, in hexadecimal."""
     return Identity.of(stack).digest()
+
+
+def read_channels(file: h5py.File) -> tuple[str, ...]:
+    """Channels of an open map: its incident polarizations, then their cross terms if there are any."""
+    return tuple(layout.CHANNELS[code] for code in file[layout.DATA]["polarization"][()])
 
 
 def read_text(dataset: h5py.Dataset) -> str:

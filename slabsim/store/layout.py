@@ -11,7 +11,7 @@ Writer and reader both go by this table.
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -20,7 +20,7 @@ import numpy as np
 from slabsim.errors import InputError
 
 if TYPE_CHECKING:
-    from slabsim.stack.sample import Stack, Stored, Sweep
+    from slabsim.stack.sample import Stack, Stored
     from slabsim.store.blocks import BlockResponse
 
 FORMAT = "1.0"
@@ -44,7 +44,8 @@ RUNNING, COMPLETE = "running", "complete"
 PENDING, DONE, FAILED = 0, 1, 2
 BLOCK_FLAGS = "pending done failed"
 
-POLARIZATIONS = ("TE", "TM")  # position is the value stored in the file
+CHANNELS = ("TE", "TM", "TE_to_TM", "TM_to_TE")  # position is the value stored in the file
+POLARIZATIONS = CHANNELS[:2]
 TIME_CONVENTION = "exp(-i*omega*t)"
 AMPLITUDE = (
     "complex amplitude = <name>_real + i*<name>_imag; ratio of electric-field amplitudes "
@@ -61,8 +62,8 @@ class Axis:
     dtype: str
     units: str
     long_name: str
-    values: Callable[[Sweep], np.ndarray]
-    flag_meanings: str = ""
+    values: Callable[[Stack], np.ndarray]
+    flag_meanings: Callable[[Stack], str] | None = None
 
 
 @dataclass(frozen=True)
@@ -76,7 +77,7 @@ class Quantity:
     is_transmitted : bool
         There is none in front of a perfect conductor.
     of : callable
-        The quantity of a block, float array of shape (n_polarizations, n_freqs, n_angles).
+        The quantity of a block, float array of shape (n_channels, n_freqs, n_angles); absorptance (n_incident, ...).
     """
 
     name: str
@@ -89,9 +90,13 @@ class Quantity:
     units: str = "1"
 
 
-def polarization_codes(sweep: Sweep) -> np.ndarray:
-    """Polarizations of a sweep as stored: 0 is TE, 1 is TM."""
-    return np.array([POLARIZATIONS.index(name) for name in sweep.polarizations], dtype="i1")
+def codes(channels: Sequence[str]) -> np.ndarray:
+    """Channels as stored: 0 is TE, 1 is TM; 2 and 3 are TE to TM and TM to TE."""
+    return np.array([CHANNELS.index(name) for name in channels], dtype="i1")
+
+
+def _meanings(stack: Stack) -> str:
+    return " ".join(CHANNELS if stack.mixes_polarizations else POLARIZATIONS)
 
 
 def _given(values: np.ndarray | None) -> np.ndarray:
@@ -102,14 +107,20 @@ def _given(values: np.ndarray | None) -> np.ndarray:
 
 _OUT = ("azimuth", "polarization", "frequency", "angle")
 _IN = ("azimuth", "incident", "frequency", "angle")
-_TE_TM = " ".join(POLARIZATIONS)
 
 AXES = (
-    Axis("azimuth", "<f8", "degree", "azimuth of the plane of incidence", lambda s: s.azimuths_deg),
-    Axis("polarization", "i1", "1", "polarization", polarization_codes, _TE_TM),
-    Axis("incident", "i1", "1", "polarization of the incident wave", polarization_codes, _TE_TM),
-    Axis("frequency", "<f8", "Hz", "frequency", lambda s: s.frequencies),
-    Axis("angle", "<f8", "degree", "angle of incidence", lambda s: s.angles_deg),
+    Axis("azimuth", "<f8", "degree", "azimuth of the plane of incidence", lambda s: s.sweep.azimuths_deg),
+    Axis("polarization", "i1", "1", "polarization, in_to_out if it changes", lambda s: codes(s.channels), _meanings),
+    Axis(
+        "incident",
+        "i1",
+        "1",
+        "polarization of the incident wave",
+        lambda s: codes(s.sweep.polarizations),
+        lambda s: " ".join(POLARIZATIONS),
+    ),
+    Axis("frequency", "<f8", "Hz", "frequency", lambda s: s.sweep.frequencies),
+    Axis("angle", "<f8", "degree", "angle of incidence", lambda s: s.sweep.angles_deg),
 )
 
 QUANTITIES = (

@@ -16,7 +16,7 @@ from slabsim.errors import InputError, MapError
 from slabsim.stack.sample import Stack
 from slabsim.store import layout
 from slabsim.store.failures import RESUME_CURE, failures_explained, open_file
-from slabsim.store.identity import Identity, read_text
+from slabsim.store.identity import Identity, read_channels, read_text
 
 
 def open_map(path: str | os.PathLike[str]) -> SweepMap:
@@ -63,6 +63,9 @@ class SweepMap:
     angles_deg, azimuths_deg : float array, shape (n_angles,), (n_azimuths,)
         [degrees]
     polarizations : tuple of {"TE", "TM"}
+        Of the incident wave.
+    channels : tuple of {"TE", "TM", "TE_to_TM", "TM_to_TE"}
+        Rows of everything but the absorptance: the polarizations, and their cross terms if the stack mixes them.
     quantities : tuple of str
         Names that `read` takes.
     title, file_name, stack_text : str
@@ -90,6 +93,7 @@ class SweepMap:
         self.angles_deg = identity.axes["angle"]
         self.azimuths_deg = identity.axes["azimuth"]
         self.polarizations = identity.polarizations
+        self.channels = read_channels(file)
         self.model = identity.model
         self.stack_text = identity.text
         self.tables = identity.tables
@@ -141,7 +145,8 @@ class SweepMap:
         ----------
         name : str
             One of `quantities`.
-        polarization : {"TE", "TM"}
+        polarization : {"TE", "TM", "TE_to_TM", "TM_to_TE"}
+            One of `channels`; of `polarizations` for the absorptance.
         azimuth : int
             Index into `azimuths_deg`.
         frequencies, angles : slice
@@ -160,10 +165,11 @@ class SweepMap:
             If a finished block cannot be read.
         """
         self._check_choice("quantity", name, self.quantities)
-        self._check_choice("polarization", polarization, self.polarizations)
+        rows = self.polarizations if name == "absorptance" else self.channels
+        self._check_choice("polarization", polarization, rows)
         if not 0 <= azimuth < self.azimuths_deg.size:
             raise InputError(f"azimuth = {azimuth}; {self.path} has the indices 0 to {self.azimuths_deg.size - 1}")
-        row = self.polarizations.index(polarization)
+        row = rows.index(polarization)
         with failures_explained(self.path, "read"):
             dataset = self._file[layout.DATA][name]
             try:
@@ -205,8 +211,9 @@ class SweepMap:
         """A stored difference, float array of shape (n_freqs, n_angles), at the first azimuth."""
         with self._comparison() as group:
             self._check_choice("comparison", name, tuple(n for n, item in group.items() if item.ndim == 3))
-            self._check_choice("polarization", polarization, self.polarizations)
-            return group[name][self.polarizations.index(polarization)]
+            rows = self.channels if group[name].shape[0] == len(self.channels) else self.polarizations
+            self._check_choice("polarization", polarization, rows)
+            return group[name][rows.index(polarization)]
 
     def comparison_attributes(self) -> dict[str, Any]:
         """What was stored beside the differences."""

@@ -47,11 +47,10 @@ class MapWriter:
         self.path = path
         self._plan = plan
         self._quantities = layout.quantities(stack)
-        self._n_polarizations = len(stack.sweep.polarizations)
+        self._n_rows = {"polarization": len(stack.channels), "incident": len(stack.sweep.polarizations)}
         shown = layout.plotted(stack)
         self._copies = [
-            (layout.plot_name(shown, polarization), shown, row)
-            for row, polarization in enumerate(stack.sweep.polarizations)
+            (layout.plot_name(shown, polarization), shown, row) for row, polarization in enumerate(stack.channels)
         ]
         self._block_size = block_size(stack, plan)
         self._file = open_file(path, "r+", libver=OBJECTS_V110)
@@ -167,8 +166,10 @@ class MapWriter:
             If an array of the block has another shape than its place in the grid.
         """
         place = self._plan.place(index)
-        shape = (self._n_polarizations, *place.shape)
-        values = {quantity.name: _checked(quantity, block, index, shape) for quantity in self._quantities}
+        values = {
+            quantity.name: _checked(quantity, block, index, (self._n_rows[quantity.axes[1]], *place.shape))
+            for quantity in self._quantities
+        }
         with failures_explained(self.path, "written"):
             reserve(self._raw, allocation_end(self._raw), self._block_size)
             data = self._file[layout.DATA]

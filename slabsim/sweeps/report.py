@@ -57,6 +57,8 @@ class SweepReport:
         Blocks computed by this run.
     n_missing : int
         Responses of this run that are not finite, NaN in the map.
+    n_diffracting : int
+        Responses of this run beyond the onset of diffraction of a grid or of plates, NaN in the map.
     missing : list of MissingPoint
         The first of them.
     failed : list of FailedBlock
@@ -69,6 +71,7 @@ class SweepReport:
     n_found: int = 0
     n_computed: int = 0
     n_missing: int = 0
+    n_diffracting: int = 0
     missing: list[MissingPoint] = field(default_factory=list)
     failed: list[FailedBlock] = field(default_factory=list)
 
@@ -105,6 +108,11 @@ class SweepReport:
         if self.is_complete and not self.n_computed:
             return f"{self.path}: the map is complete; nothing is left to compute"
         lines = [f"{self.path}: {self.n_done} of {self.n_blocks} blocks are done"]
+        if self.n_diffracting:
+            lines.append(
+                f"{self.n_diffracting} responses lie beyond the onset of diffraction of a grid or of plates and are "
+                "NaN in the map: power goes into other directions there"
+            )
         if self.n_missing:
             lines.append(f"{self.n_missing} responses are not finite and are NaN in the map:")
             lines += [f"  {point}" for point in self.missing]

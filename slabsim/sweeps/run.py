@@ -20,6 +20,8 @@ from slabsim.sweeps.progress import Progress, SilentProgress
 from slabsim.sweeps.report import FailedBlock, SweepReport
 from slabsim.sweeps.signals import StopRequest
 
+_EDGE = 1e-12  # relative rounding of the onset of diffraction
+
 
 class BlockSolver(Protocol):
     """Computes the response at frequencies [Hz] by angles [degrees], at one azimuth [degrees]."""
@@ -29,7 +31,7 @@ class BlockSolver(Protocol):
 
 @dataclass(frozen=True)
 class Response:
-    """The response of a block, arrays of shape (n_polarizations, n_freqs, n_angles)."""
+    """The response of a block, arrays of shape (n_channels, n_freqs, n_angles), A (n_incident, n_freqs, n_angles)."""
 
     r: np.ndarray
     t: np.ndarray | None
@@ -107,9 +109,7 @@ def engine_solver(stack: Stack) -> BlockSolver:
     """The engine as a block solver."""
     from slabsim.engine.response import Solver  # compiles: only when something is computed
 
-    solver = Solver(stack, stack.sweep.model)
-    # wires along z, isotropic layers: the azimuth has no effect
-    return lambda frequencies, angles_deg, azimuth_deg: solver.solve(frequencies, angles_deg)
+    return Solver(stack, stack.sweep.model).solve
 
 
 @dataclass
@@ -128,35 +128,62 @@ class _Run:
         self.report.n_found = self.plan.n_blocks - left.size
         self.progress.start(self.plan.n_points, self.plan.n_points - points_left)
         try:
-            for index in left:
+            for twins in self._alike(left):
                 if is_stopped():
                     return True
-                self._compute_block(int(index))
-                self.progress.advance(self.plan.place(int(index)).n_points)
+                self._compute_blocks(twins)
         finally:
             self.progress.stop()
         if self.report.is_complete:
             self.writer.finish()
         return False
 
-    def _compute_block(self, index: int) -> None:
-        place = self.plan.place(index)
+    def _alike(self, left: np.ndarray) -> list[list[int]]:
+        """Blocks with the same response: all azimuths at once, if the stack looks alike from all of them."""
+        if self.stack.depends_on_azimuth:
+            return [[int(index)] for index in left]
+        n_azimuths = self.plan.block_counts[0]
+        groups: dict[int, list[int]] = {}
+        for index in left:
+            groups.setdefault(int(index) % (self.plan.n_blocks // n_azimuths), []).append(int(index))
+        return list(groups.values())
+
+    def _compute_blocks(self, twins: list[int]) -> None:
+        place = self.plan.place(twins[0])
         sweep = self.stack.sweep
         frequencies, angles_deg = sweep.frequencies[place.frequencies], sweep.angles_deg[place.angles]
         azimuth_deg = float(sweep.azimuths_deg[place.azimuth])
         try:
             response = self.solve_block(frequencies, angles_deg, azimuth_deg)
         except (SlabsimError, ArithmeticError) as error:
-            self.writer.mark_failed(index)
             reason = f"{type(error).__name__}: {error}"
-            self.report.failed.append(FailedBlock(index, _ends(frequencies), _ends(angles_deg), reason))
+            for index in twins:
+                self.writer.mark_failed(index)
+                self.report.failed.append(FailedBlock(index, _ends(frequencies), _ends(angles_deg), reason))
+                self.progress.advance(place.n_points)
             return
-        is_missing = _not_finite(response)
+        is_missing = _missing_incident(response)
         if np.any(is_missing):
-            self.report.note_missing(is_missing, sweep.polarizations, frequencies, angles_deg, azimuth_deg)
+            self._note_missing(is_missing, frequencies, angles_deg, twins)
             response = _blanked(response, is_missing)
-        self.writer.write_block(index, response)
-        self.report.n_computed += 1
+        for index in twins:
+            self.writer.write_block(index, response)
+            self.report.n_computed += 1
+            self.progress.advance(place.n_points)
+
+    def _note_missing(
+        self, is_missing: np.ndarray, frequencies: np.ndarray, angles_deg: np.ndarray, twins: list[int]
+    ) -> None:
+        from slabsim.engine.diffraction import onset
+
+        sweep = self.stack.sweep
+        for index in twins:
+            azimuth_deg = float(sweep.azimuths_deg[self.plan.place(index).azimuth])
+            lowest = onset(self.stack, angles_deg, azimuth_deg)
+            beyond = is_missing & (frequencies[:, None] >= lowest * (1.0 - _EDGE))
+            self.report.n_diffracting += int(np.count_nonzero(beyond))
+            others = is_missing & ~beyond
+            self.report.note_missing(others, sweep.polarizations, frequencies, angles_deg, azimuth_deg)
 
 
 def _watched(run: _Run, stop: Callable[[], bool] | None) -> SweepReport:
@@ -184,15 +211,19 @@ def _interrupted(report: SweepReport) -> SweepInterrupted:
     )
 
 
-def _not_finite(response: BlockResponse) -> np.ndarray:
-    is_finite = np.isfinite(response.r) & np.isfinite(response.R) & np.isfinite(response.A)
+def _missing_incident(response: BlockResponse) -> np.ndarray:
+    """Where something is not finite, for each incident polarization: bool array, shape of A."""
+    is_finite = np.isfinite(response.r) & np.isfinite(response.R)
     for transmitted in (response.t, response.T):
         if transmitted is not None:
             is_finite &= np.isfinite(transmitted)
-    return ~is_finite
+    # the channels are the incident polarizations, then their cross terms in the same order
+    by_incident = is_finite.reshape(-1, *response.A.shape).all(axis=0)
+    return ~(by_incident & np.isfinite(response.A))
 
 
-def _blanked(response: BlockResponse, is_missing: np.ndarray) -> Response:
+def _blanked(response: BlockResponse, missing_incident: np.ndarray) -> Response:
+    is_missing = np.tile(missing_incident, (response.r.shape[0] // missing_incident.shape[0], 1, 1))
     t = None if response.t is None else np.where(is_missing, complex(np.nan, np.nan), response.t)
     T = None if response.T is None else np.where(is_missing, np.nan, response.T)
     return Response(
@@ -200,7 +231,7 @@ def _blanked(response: BlockResponse, is_missing: np.ndarray) -> Response:
         t,
         np.where(is_missing, np.nan, response.R),
         T,
-        np.where(is_missing, np.nan, response.A),
+        np.where(missing_incident, np.nan, response.A),
     )
 
 

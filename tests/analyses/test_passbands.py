@@ -16,7 +16,7 @@ class Shape:
 
     def __init__(self, amplitude):
         self.amplitude = amplitude
-        self.angle_deg, self.quantity, self.noise = 0.0, "T", 0.0
+        self.angle_deg, self.azimuth_deg, self.quantity, self.noise = 0.0, 0.0, "T", 0.0
 
     def power(self, f):
         return abs(self.amplitude(np.asarray(f))) ** 2

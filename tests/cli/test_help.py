@@ -4,7 +4,7 @@ import re
 import subprocess
 import sys
 
-COMMANDS = ["sweep", "passbands", "compare", "describe", "plot", "schema"]
+COMMANDS = ["sweep", "passbands", "compare", "losses", "describe", "plot", "schema"]
 
 
 def test_help_lists_the_commands(slabsim):

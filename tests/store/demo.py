@@ -1,17 +1,17 @@
 """A made-up stack and a made-up response that is known at every point."""
 
 from dataclasses import dataclass
-from types import SimpleNamespace
 
 import h5py
 import numpy as np
 
-from slabsim.stack.sample import Layer, Stack, Sweep, WireEnd, WireSet
+from slabsim.materials.material import VACUUM
+from slabsim.stack.sample import Layer, Plates, Stack, Sweep, WireEnd, WireSet
 from slabsim.store import layout
 from slabsim.store.writer import MapWriter
 from slabsim.sweeps.plan import SweepPlan
 
-AIR = SimpleNamespace(name="air")
+AIR = VACUUM
 TEXT = 'title = "demo"\n# radius 50 µm\n[sweep]\nmodel = "nonlocal"\n'
 TABLE = "wavelength (um);n;k\n1,0;1,5;0\n"
 
@@ -30,11 +30,13 @@ class Answer:
 def demo_stack(n_freqs=12, n_angles=5, n_azimuths=1, *, back=AIR, text=TEXT, tables=None, model="nonlocal", **sweep):
     """A stack of one wire layer over a grid of the given size."""
     wires = WireSet((2e-3, 2e-3), 5e-5, None, (WireEnd("open"), WireEnd("open")))
+    # plates look different from different azimuths, and do not mix polarizations
+    turning = (Plates("plates", 6e-3, 4e-3, "y", AIR),) if n_azimuths > 1 else ()
     return Stack(
         title="demo",
         front=AIR,
         back=back,
-        elements=(Layer("wire slab", AIR, 0.01, wires),),
+        elements=(Layer("wire slab", AIR, 0.01, (wires,)), *turning),
         sweep=Sweep(
             np.linspace(5e9, 40e9, n_freqs),
             np.linspace(0.0, 80.0, n_angles),
