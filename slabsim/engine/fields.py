@@ -194,7 +194,7 @@ class _Waves:
             rho_front=tuple(complex(*values[end[rows.RHO_FRONT] :][:2]) for end in ends),
             front=self.a[e + 1][0],
             y=float(recipe.scales[e][0]),
-            references=recipe.references[e],
+            references=tuple(float(one[0]) for one in recipe.references[e]),
             s=float(self.row(ports.AT_S)[0]),
             q2=float(self.row(ports.AT_Q2)[0]),
         )

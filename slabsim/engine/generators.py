@@ -43,14 +43,14 @@ class Generator:
         `values`: complex array of shape (n_freqs,).
     resonances : list of (c0, c1)
         Complex arrays of shape (n_freqs,).
-    crossing : list of (WireSet or Mesh, WireNumbers, float)
-        What the ports from 2 on belong to, and the reference kp [rad/m] of each.
+    crossing : list of (WireSet or Mesh, WireNumbers, float array)
+        What the ports from 2 on belong to, and the reference kp [rad/m] of each, shape (n_freqs,).
     """
 
     n_ports: int
     terms: list[tuple[int, int, int, np.ndarray]] = field(default_factory=list)
     resonances: list[tuple[np.ndarray, np.ndarray]] = field(default_factory=list)
-    crossing: list[tuple[WireSet | Mesh, WireNumbers, float]] = field(default_factory=list)
+    crossing: list[tuple[WireSet | Mesh, WireNumbers, np.ndarray]] = field(default_factory=list)
 
     @property
     def kind(self) -> int:
@@ -87,7 +87,7 @@ def layer_generator(
     frequencies: np.ndarray,
     index2: np.ndarray,
     azimuth: float,
-    reference: Callable[[WireSet | Mesh], float | None],
+    reference: Callable[[WireSet | Mesh], np.ndarray | None],
 ) -> Generator:
     """Generator of a layer.
 
@@ -101,7 +101,7 @@ def layer_generator(
     azimuth : float
         Of the plane of incidence [rad].
     reference : callable
-        Reference kp [rad/m] of a set that is joined to the next layer, else None.
+        Reference kp [rad/m], shape (n_freqs,), of a set that is joined to the next layer, else None.
     """
     if is_local:
         return _local(layer, frequencies, index2, azimuth)
@@ -113,13 +113,20 @@ def layer_generator(
         numbers = wire_numbers(layer, wires, frequencies)
         n = turned(wires.direction, layer.rotation, azimuth)
         if wires.crosses_faces:
-            _crossing(found, wires, numbers, n, eps[3], reference(wires) or numbers.kp)
+            _crossing(found, wires, numbers, n, eps[3], _reference(numbers, reference(wires)))
         else:
             _parallel(found, numbers, n, index2)
     if layer.mesh is not None:
         numbers = wire_numbers(layer, layer.mesh, frequencies)
-        _mesh(found, layer.mesh, numbers, eps[3], index2, reference(layer.mesh) or numbers.kp)
+        _mesh(found, layer.mesh, numbers, eps[3], index2, _reference(numbers, reference(layer.mesh)))
     return found
+
+
+def _reference(numbers: WireNumbers, given: np.ndarray | None) -> np.ndarray:
+    """kp that scales potential and current of a port: it makes the wave impedance of lossy wires about one."""
+    if given is not None:
+        return given
+    return numbers.kp * abs(numbers.inductance + numbers.zc) ** -0.25
 
 
 def _tensor(layer: Layer, frequencies: np.ndarray, azimuth: float, which: str) -> tuple[np.ndarray, ...]:
@@ -150,7 +157,7 @@ def _crossing(
     numbers: WireNumbers,
     n: Direction,
     eps_z: np.ndarray,
-    reference: float,
+    reference: np.ndarray,
     l0: float = 1.0,
 ) -> None:
     port = 2 + len(found.crossing)
@@ -187,7 +194,7 @@ def _mesh(
     numbers: WireNumbers,
     eps_z: np.ndarray,
     index2: np.ndarray,
-    reference: float,
+    reference: np.ndarray,
 ) -> None:
     port = found.n_ports - 1
     l0 = stiffness(mesh.pitch, mesh.radius, numbers.kp) if mesh.stiffness is None else mesh.stiffness

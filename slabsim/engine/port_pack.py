@@ -39,7 +39,7 @@ class PortRecipe:
         For each element, the entry of ``stack.flatten()`` it belongs to.
     scales : tuple of float arrays, shape (n_freqs,)
         Reference admittance of each element.
-    references : tuple of tuple of float
+    references : tuple of tuple of float arrays, shape (n_freqs,)
         Reference kp [rad/m] of the extra ports of each element.
     n_ports : int
         Most ports of an element.
@@ -56,7 +56,7 @@ class PortRecipe:
     media: np.ndarray
     positions: tuple[int, ...]
     scales: tuple[np.ndarray, ...]
-    references: tuple[tuple[float, ...], ...]
+    references: tuple[tuple[np.ndarray, ...], ...]
     n_ports: int
     metal_back: bool
     diffracts: np.ndarray
@@ -109,7 +109,7 @@ class _Port:
 
     direction: Direction
     cell: tuple[float, float]
-    reference: float
+    reference: np.ndarray
     load: SeriesLoad | None
 
 
@@ -126,7 +126,7 @@ class _Packer:
     elements: list[list[int]] = field(default_factory=list)
     positions: list[int] = field(default_factory=list)
     scales: list[np.ndarray] = field(default_factory=list)
-    references: list[tuple[float, ...]] = field(default_factory=list)
+    references: list[tuple[np.ndarray, ...]] = field(default_factory=list)
     terms: list[tuple[int, int, int, int]] = field(default_factory=list)
     ends: list[tuple[int, int, int, int]] = field(default_factory=list)
     table: list[np.ndarray] = field(default_factory=list)
@@ -176,7 +176,7 @@ class _Packer:
         lookup = {id(wires): port for wires, port in behind}
         reference = self.reference(layer.material)
 
-        def joined(wires: WireSet | Mesh) -> float | None:
+        def joined(wires: WireSet | Mesh) -> np.ndarray | None:
             port = lookup.get(id(wires))
             return None if port is None else self.state[port].reference
 
@@ -223,7 +223,7 @@ class _Packer:
                 state.append(_Port(direction, cell, reference, front.load))
         self.state = state
 
-    def rho(self, end: WireEnd, numbers: WireNumbers, reference: float, n_z: float) -> np.ndarray:
+    def rho(self, end: WireEnd, numbers: WireNumbers, reference: np.ndarray, n_z: float) -> np.ndarray:
         """Reflection coefficient of what a wire ends on; that of a joint is not used."""
         one = np.ones(self.frequencies.shape, dtype=complex)
         if end.kind != "grounded":
@@ -233,7 +233,7 @@ class _Packer:
         z = self.y * self.load(end.load, numbers.area, reference, n_z)
         return (z - 1.0) / (z + 1.0)
 
-    def load(self, load: SeriesLoad, area: float, reference: float, n_z: float) -> np.ndarray:
+    def load(self, load: SeriesLoad, area: float, reference: np.ndarray, n_z: float) -> np.ndarray:
         """psi/V of a load at a wire end, not scaled by y."""
         return reference**2 * load_impedance(load, self.frequencies) * area / (ETA0 * n_z)
 

@@ -117,7 +117,9 @@ def _across(axes: np.ndarray, n: Direction) -> np.ndarray:
     x, y, z = axes
     if np.array_equal(x, y) and (n == ALONG_Z or np.array_equal(x, z)):
         return x
-    # sqrt of the determinant over the plane across n; each factor's own root keeps the branch with Im >= 0
-    if n == ALONG_Z:
-        return np.sqrt(x) * np.sqrt(y)
-    return np.sqrt(n[0] ** 2 * y * z + n[1] ** 2 * x * z + n[2] ** 2 * x * y)
+    # the determinant over the plane across n is a product of two numbers with Im >= 0, and so its root has Im >= 0; if
+    # both are real and negative, so is the root
+    root = np.sqrt(n[0] ** 2 * y * z + n[1] ** 2 * x * z + n[2] ** 2 * x * y)
+    trace = x + y + z - _along(axes, n)
+    flips = (root.imag < 0.0) | ((root.imag == 0.0) & (trace.real < 0.0))
+    return np.where(flips, -root, root)

@@ -1,0 +1,85 @@
+"""Random stacks whose polarizations mix, at random azimuths, against the dense solution of `tests/reference/mixed.py`."""
+
+import numpy as np
+import pytest
+
+from slabsim.engine.fields import absorbed_by_element
+from slabsim.engine.response import Solver
+from slabsim.stack.sample import Film, Grid, Layer, Patches, Stack, Strips
+from tests.engine.mixed_twins import random_mixed_stack, reference
+
+N_STACKS, N_GROUPS = 320, 16
+DIGITS = 1e-10
+CHANNELS = {"TE": (0, 0), "TM": (1, 1), "TE_to_TM": (0, 1), "TM_to_TE": (1, 0)}
+
+
+def draw(seed: int) -> tuple[Stack, float, float, float, str]:
+    """Stack, frequency [Hz], angle and azimuth [degrees], model of a seed; every third is lossless."""
+    drawn = random_mixed_stack(np.random.default_rng(seed), lossless=seed % 3 == 0)
+    return *drawn, "local" if seed % 8 == 7 else "nonlocal"
+
+
+@pytest.mark.parametrize("group", range(N_GROUPS))
+def test_jones_matrices_and_absorption_agree_with_the_dense_solution(group):
+    for seed in range(group, N_STACKS, N_GROUPS):
+        stack, frequency, angle_deg, azimuth_deg, model = draw(seed)
+        response = Solver(stack, model, ("TE", "TM")).solve(frequency, angle_deg, azimuth_deg)
+        expected = reference(stack, frequency, angle_deg, azimuth_deg, model)
+        for row, channel in enumerate(response.channels):
+            into, out = CHANNELS[channel]
+            assert abs(response.r[row, 0, 0] - expected.r[into][out]) < DIGITS, (seed, channel)
+            if expected.t is not None:
+                t = expected.t[into][out]
+                assert abs(response.t[row, 0, 0] - t) < DIGITS * max(1.0, abs(t)), (seed, channel)
+                assert abs(response.T[row, 0, 0] - expected.T[into][out]) < DIGITS, (seed, channel)
+        assert np.max(abs(response.A[:, 0, 0] - expected.A)) < DIGITS, seed
+        for p, polarization in enumerate(("TE", "TM")):
+            place = (frequency, angle_deg, polarization, model, azimuth_deg)
+            absorbed = absorbed_by_element(stack, *place)[:, 0]
+            assert np.max(abs(absorbed - booked(stack, expected, p))) < DIGITS, (seed, polarization)
+
+
+def booked(stack: Stack, expected, p: int) -> np.ndarray:
+    """Loss per element of the reference; slabsim counts a load in a joint with the layer in front, the last one here."""
+    loss = np.array(expected.absorbed[p]) + np.array(expected.end_loads[p])
+    flat = stack.flatten()
+    for i, element in enumerate(flat):
+        if isinstance(element, Layer) and any(w.ends[0].kind == "joined" and w.ends[0].load for w in element.wires):
+            raise AssertionError("the random stacks have the load of a joint on its front side")
+    assert loss.size == len(flat)
+    return loss
+
+
+def test_the_sample_holds_every_kind_of_element_and_end():
+    drawn = [draw(seed) for seed in range(N_STACKS)]
+    elements = [(e, f) for stack, f, *_ in drawn for e in stack.flatten()]
+    layers = [(e, f) for e, f in elements if isinstance(e, Layer)]
+    sets = [w for layer, _ in layers for w in layer.wires]
+    ends = [end for w in sets if w.crosses_faces for end in w.ends]
+    counts = {
+        "tilted": sum(0 < w.direction[2] < 1 for w in sets),
+        "normal": sum(w.is_normal for w in sets),
+        "flat": sum(w.direction[2] == 0 for w in sets),
+        "several sets": sum(len(layer.wires) > 1 for layer, _ in layers),
+        "several that end": sum(sum(w.crosses_faces for w in layer.wires) > 1 for layer, _ in layers),
+        "mesh": sum(layer.mesh is not None for layer, _ in layers),
+        "host inductance": sum(w.inductance == "host" for w in sets),
+        "anisotropic": sum(not layer.material.is_isotropic for layer, _ in layers),
+        "negative along an axis": sum(
+            bool(np.any(layer.material.permittivity_axes(f).real < 0)) for layer, f in layers
+        ),
+        "magnetic": sum(layer.material.is_magnetic for layer, _ in layers),
+        "turned": sum(layer.rotation != 0 for layer, _ in layers),
+        "real metal": sum(w.metal is not None for w in sets),
+        "joined": sum(end.kind == "joined" for end in ends),
+        "joined by a load": sum(end.kind == "joined" and end.load is not None for end in ends),
+        "grounded": sum(end.kind == "grounded" for end in ends),
+        "loaded": sum(end.kind == "grounded" and end.load is not None for end in ends),
+        "grids": sum(isinstance(e, Grid) for e, _ in elements),
+        "patches, strips, films": sum(isinstance(e, Patches | Strips | Film) for e, _ in elements),
+        "metal back": sum(stack.back is None for stack, *_ in drawn),
+        "normal incidence": sum(angle == 0.0 for _, _, angle, *_ in drawn),
+        "grazing": sum(angle > 89.9 for _, _, angle, *_ in drawn),
+        "azimuth along an axis": sum(azimuth in (0.0, 90.0) for *_, azimuth, _ in drawn),
+    }
+    assert min(counts.values()) >= 10, counts
