@@ -22,7 +22,7 @@ from typing import Any
 
 import numpy as np
 
-from slabsim.analyses.comparison import Comparison, compare_models
+from slabsim.analyses.comparison import NOTHING, Comparison, compare_models
 from slabsim.analyses.description import Description, describe_stack
 from slabsim.analyses.losses import PowerBudget, power_budget
 from slabsim.analyses.passbands import Band, BandList, Level, find_bands, read_level
@@ -90,7 +90,6 @@ __all__ = [
 ]
 
 _SIGNATURE = b"\x89HDF\r\n\x1a\n"
-_NOTHING = 1e-12  # cross-polar power that counts as none
 _DATASETS = {"T": "transmittance", "R": "reflectance", "A": "absorptance"}
 
 
@@ -205,7 +204,7 @@ def _panels(found: SweepMap, name: str, azimuths: Iterable[int], angles: slice) 
     for channel in found.polarizations if name == "absorptance" else found.channels:
         parts = [found.read(name, channel, azimuth, angles=angles) for azimuth in azimuths]
         values = np.concatenate(parts, axis=1)
-        if channel in found.polarizations or np.nanmax(values, initial=0.0) > _NOTHING:
+        if channel in found.polarizations or np.nanmax(values, initial=0.0) > NOTHING:
             panels.append((channel.replace("_", " "), values))
     return panels
 
@@ -228,13 +227,17 @@ def _absence(stack: Stack, quantity: str) -> str:
 def draw_comparison(comparison: Comparison, stack: Stack, figure_path: str | os.PathLike[str]) -> None:
     """Draw the absolute difference of two models, with a line where it equals the tolerance."""
     trusted, other = comparison.models
-    names = [channel.replace("_", " ") for channel in comparison.channels]
+    panels = [
+        (channel.replace("_", " "), abs(values))
+        for channel, values in zip(comparison.channels, comparison.difference, strict=True)
+        if channel in comparison.verdicts
+    ]
     map_figure(
         figure_path,
         f"{stack.title or stack.file_name}: {other} against {trusted} model",
         comparison.frequencies,
         comparison.angles_deg,
-        list(zip(names, abs(comparison.difference), strict=True)),
+        panels,
         stack.sweep.spectral_unit,
         f"difference of {_DATASETS[comparison.quantity]}",
         contour=comparison.tolerance,

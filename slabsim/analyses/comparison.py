@@ -22,6 +22,7 @@ from slabsim.stack.sample import Channel, Model, Stack
 
 MODELS: tuple[Model, ...] = ("nonlocal", "local")
 TOLERANCE = 0.01  # in T
+NOTHING = 1e-12  # power that counts as none
 Angles = Sequence[float] | np.ndarray | None
 
 
@@ -82,7 +83,7 @@ class Comparison:
     levels : tuple of BandList
         Band lists of both models, with their levels.
     verdicts : dict of str to str
-        One sentence per channel.
+        One sentence per channel; none for a cross term that is zero throughout.
     """
 
     models: tuple[Model, Model]
@@ -166,6 +167,7 @@ def compare_models(
         verdicts={
             channel: verdict(stack, channel, distance[p], tolerance, quantity, azimuth)
             for p, channel in enumerate(channels)
+            if channel in sweep.polarizations or np.nanmax(trusted[p] + other[p], initial=0.0) > NOTHING
         },
     )
 

@@ -17,6 +17,7 @@ _NEAR = 0.15  # how close, in units of pi, to a resonance a difference is blamed
 _FLAT = 0.35  # |Re eps_zz|/eps_host up to which a difference is blamed on the plasma edge
 _SMALL = 0.05  # share of the grid up to which the local model counts as good outside a region
 _ROUND = 1e-12
+_SAME = 1e-11  # difference of powers that is rounding
 _THIN = 0.5  # electrical thickness kh d below which a layer of attached wires acts as a local one
 
 
@@ -51,6 +52,8 @@ def verdict(
     known = np.nan_to_num(distance)
     i, j = np.unravel_index(int(np.argmax(known)), known.shape)
     largest, f, angle = float(known[i, j]), float(stack.sweep.frequencies[i]), float(angles[j])
+    if largest < _SAME:
+        return f"Local model exact here: {quantity} of the two models agrees to rounding."
     differing = [layer for layer, reason in zip(layers, reasons, strict=True) if not reason]
     if largest <= tolerance:
         why = _why_it_holds(stack, differing)
@@ -139,15 +142,11 @@ def _why_it_fails(layers: list[_WireLayer], frequency: float, angle_deg: float, 
     crossing = [layer for layer in layers if layer.crosses_faces]
     for layer in crossing:
         order = layer.electrical_thickness(frequency) / pi
-        if round(order) >= 1 and abs(order - round(order)) < _NEAR:
+        is_mesh = isinstance(layer.wires, Mesh)
+        if not is_mesh and round(order) >= 1 and abs(order - round(order)) < _NEAR:
             return (
                 f"there the wires' TEM mode, which the local model lacks, resonates across {layer.name} "
                 f"(kh d = {order:.2f} pi)"
-            )
-    for layer in layers:
-        if abs(layer.local_eps(frequency)) < _FLAT:
-            return (
-                f"there {layer.name} is near its plasma edge, where the local permittivity along the wires passes zero"
             )
     if not crossing:
         layer = max(layers, key=lambda one: one.share_along)
@@ -158,8 +157,15 @@ def _why_it_fails(layers: list[_WireLayer], frequency: float, angle_deg: float, 
             f"the permittivity along the wires of {layer.name} depends on the wavenumber along them "
             f"({share:.2f} of that in the host there), which the local model drops"
         )
+    for layer in layers:
+        if abs(layer.local_eps(frequency)) < _FLAT:
+            return (
+                f"there {layer.name} is near its plasma edge, where the local permittivity along the wires passes zero"
+            )
     layer = max(crossing, key=lambda one: one.electrical_thickness(frequency))
     thickness = layer.electrical_thickness(frequency)
+    if isinstance(layer.wires, Mesh):
+        return f"{layer.name} has a longitudinal mode (kh d = {thickness:.2f}) that the local model lacks"
     if layer.local_eps(frequency) < 0.0:
         return (
             f"below the plasma edge the wires of {layer.name} carry a TEM mode (kh d = {thickness:.2f}) "

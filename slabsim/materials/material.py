@@ -122,7 +122,8 @@ def _mean(axes: np.ndarray) -> np.ndarray:
     x, y, z = axes
     if np.array_equal(x, z) and np.array_equal(x, y):
         return np.array(x)
-    return np.sqrt(z * np.sqrt(x * y))
+    # root by root: so the mean of passive values has Im >= 0, also where one of them is negative
+    return np.sqrt(z) * np.sqrt(np.sqrt(x) * np.sqrt(y))
 
 
 VACUUM = Material("vacuum", Constant())

@@ -395,7 +395,7 @@ def _pair_cells(pair: EdgePair, unit: str) -> list[str]:
 
 def _chosen(comparison: Comparison, most: int) -> Iterator[AngleSummary]:
     """Rows of at most `most` angles per channel, first and last among them."""
-    for channel in comparison.channels:
+    for channel in comparison.verdicts:  # cross terms that are zero have none
         rows = [row for row in comparison.angles if row.polarization == channel]
         count = min(most, len(rows))
         places = {round(i * (len(rows) - 1) / max(count - 1, 1)) for i in range(count)}

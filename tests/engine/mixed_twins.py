@@ -1,4 +1,4 @@
-"""Stacks whose polarizations mix, written twice: as slabsim's own model, and as plain numbers for `reference/mixed.py`."""
+"""Stacks whose polarizations mix, written twice: as slabsim's own model, and as plain numbers for the reference."""
 
 from dataclasses import replace
 
@@ -64,7 +64,7 @@ def _axes(material: Material, frequency: float):
 
 def _mean(material: Material, frequency: float):
     (x, y, z), _ = _axes(material, frequency)
-    return x if x == y == z else complex(mp.sqrt(mp.mpmathify(z) * mp.sqrt(mp.mpmathify(x) * y)))
+    return x if x == y == z else complex(mp.sqrt(z) * mp.sqrt(mp.sqrt(x) * mp.sqrt(y)))
 
 
 def _grid(grid, sides, frequency, k0, kt, phi):
@@ -169,7 +169,9 @@ def _random_set(rng, wavelength, pitch, lossless):
 
 def _random_axes(rng, lossless):
     loss = 0.0 if lossless else 10 ** rng.uniform(-4, -0.5)
-    eps = rng.uniform(1, 6, 3) * rng.choice([1, -1], 3, p=[0.85, 0.15]) + 1j * loss * rng.uniform(0.2, 1, 3)
+    # near fields of sheets run away into a host with permittivities of both signs: not without loss
+    signs = np.ones(3) if lossless else rng.choice([1, -1], 3, p=[0.8, 0.2])
+    eps = rng.uniform(1, 6, 3) * signs + 1j * loss * rng.uniform(0.2, 1, 3)
     mu = rng.uniform(0.5, 2, 3) + 1j * loss * rng.uniform(0.2, 1, 3)
     return axes_medium(eps, mu if rng.random() < 0.5 else None)
 

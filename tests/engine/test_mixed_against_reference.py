@@ -1,4 +1,4 @@
-"""Random stacks whose polarizations mix, at random azimuths, against the dense solution of `tests/reference/mixed.py`."""
+"""Random stacks whose polarizations mix, at random azimuths, against the dense solution of `reference/mixed.py`."""
 
 import numpy as np
 import pytest
@@ -40,14 +40,14 @@ def test_jones_matrices_and_absorption_agree_with_the_dense_solution(group):
 
 
 def booked(stack: Stack, expected, p: int) -> np.ndarray:
-    """Loss per element of the reference; slabsim counts a load in a joint with the layer in front, the last one here."""
-    loss = np.array(expected.absorbed[p]) + np.array(expected.end_loads[p])
-    flat = stack.flatten()
-    for i, element in enumerate(flat):
-        if isinstance(element, Layer) and any(w.ends[0].kind == "joined" and w.ends[0].load for w in element.wires):
-            raise AssertionError("the random stacks have the load of a joint on its front side")
-    assert loss.size == len(flat)
-    return loss
+    """Loss per element of the reference; a load in a joint counts with the layer in front, which gives it here."""
+    assert not any(
+        wires.ends[0].kind == "joined" and wires.ends[0].load
+        for layer in stack.flatten()
+        if isinstance(layer, Layer)
+        for wires in layer.wires
+    )
+    return np.array(expected.absorbed[p]) + np.array(expected.end_loads[p])
 
 
 def test_the_sample_holds_every_kind_of_element_and_end():

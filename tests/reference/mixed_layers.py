@@ -15,6 +15,7 @@ import mpmath as mp
 from tests.reference.layers import End, Number, Open
 
 Axes = tuple[Number, Number, Number]
+_OPEN = Open()
 
 
 @dataclass(frozen=True)
@@ -27,8 +28,8 @@ class Set:
     kp: Number
     n: Axes
     zeta: Number = 0
-    front: End = Open()
-    back: End = Open()
+    front: End = _OPEN
+    back: End = _OPEN
     inductance: Number = 1
 
 
@@ -39,8 +40,8 @@ class MeshArray:
     kp: Number
     stiffness: Number
     zeta: Number = 0
-    front: End = Open()
-    back: End = Open()
+    front: End = _OPEN
+    back: End = _OPEN
     inductance: Number = 1
 
 

@@ -10,8 +10,9 @@ from tests.stack.texts import SWEEP, faults_of
     [
         (
             "",
-            "line 1, layer 1: an empty entry; an entry is either a layer (material, thickness, and wires or mesh if "
-            "any), plates (plates, thickness), a sheet (one of patches, strips, film, grid) or a group (repeat, layers)",
+            "line 1, layer 1: an empty entry; an entry is either a layer (material, thickness, and wires or mesh "
+            "if any), plates (plates, thickness), a sheet (one of patches, strips, film, grid) or a group "
+            "(repeat, layers)",
         ),
         ('name = "x"', 'line 1, layer 1 "x": an empty entry; an entry is either'),
         ('pacthes = { period = "2 mm" }', 'line 1, layer 1: unknown key "pacthes"; did you mean "patches"?'),

@@ -36,7 +36,7 @@ from tests.stack.texts import SLAB, the_fault_of
         (
             'pitch = "2 mm"',
             'pitch = "2 mm"\naxis = { tilt = "89.95 deg" }',
-            'axis.tilt: "89.95 deg": such wires hardly reach the other face; a tilt is at most 89.9 deg, or "90 deg" for',
+            'axis.tilt: "89.95 deg": such wires hardly reach the other face; a tilt is at most 89.9 deg, or "90 deg"',
         ),
         (
             'pitch = "2 mm"',

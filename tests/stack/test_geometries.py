@@ -158,8 +158,8 @@ def test_crossed_sets_are_joined_each_to_its_own_direction():
         (GRID.replace("copper", "silver"), 'grid.metal: material "silver" is not defined'),
         (
             PLATES.replace("6 mm", "1 mm"),
-            'thickness "1 mm" with spacing "4 mm": the two edges of the plates would see each other\'s near fields, and '
-            "they are solved one by one; the thickness must be at least 2 mm",
+            'thickness "1 mm" with spacing "4 mm": the two edges of the plates would see each other\'s near fields, '
+            "and they are solved one by one; the thickness must be at least 2 mm",
         ),
         (PLATES.replace('"y"', '"z"'), 'plates.normal: "z"; allowed are "x", "y"'),
         (PLATES + 'material = "copper"\n', "layer 1: plates and material in one entry; an entry is either a layer"),

@@ -154,8 +154,8 @@ def test_one_end_that_cannot_be_is_told_with_what_its_face_offers(text, fault):
             GROUP + wires("joined", "joined", table="layer.layers"),
             [
                 'ends 1: "joined" needs wires in the next layer that end at this face; here is the front half-space; '
-                "the repeats of a group are all alike: write the layers that differ, often the first and the last repeat, out as "
-                "entries of their own",
+                "the repeats of a group are all alike: write the layers that differ, often the first and the last "
+                "repeat, out as entries of their own",
                 'ends 2: "joined" needs wires in the next layer that end at this face; here is the back half-space; '
                 "the repeats of a group",
             ],

@@ -3,6 +3,7 @@
 import signal
 import threading
 import tracemalloc
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -277,3 +278,19 @@ def test_memory_does_not_grow_with_the_sweep(tmp_path):
         tracemalloc.stop()
     whole = 2000 * 100 * 2 * 7 * 8  # bytes of the larger sweep's quantities
     assert peaks[1] < 1.5 * peaks[0] < whole / 5
+
+
+def test_a_stack_that_looks_alike_from_all_sides_is_solved_once_for_all_azimuths(path):
+    turning = demo_stack(n_azimuths=2)  # with plates
+    alike = replace(turning, elements=turning.elements[:1])
+    assert turning.depends_on_azimuth
+    assert not alike.depends_on_azimuth
+    for stack, n_calls in ((turning, 2), (alike, 1)):
+        plan = SweepPlan.of(stack.sweep)
+        solver = DemoSolver(stack)
+        report = run_sweep(stack, path, solver, plan=plan, replace=True)
+        assert report.n_computed == report.n_blocks == 2
+        assert len(solver.calls) == n_calls
+    with open_map(path) as found:
+        assert found.is_complete
+        assert np.array_equal(found.read("transmittance", "TM", 0), found.read("transmittance", "TM", 1))
