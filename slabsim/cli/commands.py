@@ -74,7 +74,7 @@ def sweep(
     _check_no_map(stack)
     sample = read_stack(stack)
     target = output or Path(stack.stem + ".h5")
-    announce_compilation()
+    announce_compilation(sample)
     start = perf_counter()
     try:
         report = run_sweep(sample, target, resume=resume, replace=replace, compress=compress, progress=bar())
@@ -114,7 +114,7 @@ def passbands(
     from slabsim.report import tables
 
     sample = api.load_stack(source)
-    announce_compilation()
+    announce_compilation(sample)
     chosen, turns = angle or _some(sample.sweep.angles_deg), azimuth or _some(sample.sweep.azimuths_deg, 4)
     lists = api.find_bands(
         sample,
@@ -173,7 +173,7 @@ def compare(
     from slabsim.report.figures import check_suffix
 
     sample = api.load_stack(source)
-    announce_compilation()
+    announce_compilation(sample)
     chosen = sorted(set(angle or _some(sample.sweep.angles_deg)))
     is_in_place = api.is_map(source) and (output is None or output == source)
     target = source if is_in_place else output or Path(source.stem + "_compare.h5")
@@ -217,16 +217,16 @@ def losses(
     """
     from slabsim import api
     from slabsim.cli.progress import announce_compilation
-    from slabsim.report import tables
+    from slabsim.report import stack_tables, tables
 
     sample = api.load_stack(source)
     f = api.read_frequency(frequency)
-    announce_compilation()
+    announce_compilation(sample)
     budget = api.power_budget(sample, f, angle, azimuth, _model(model))
     turn = f", azimuth {budget.azimuth_deg:g} deg" if sample.depends_on_azimuth else ""
     where = f"{frequency}, {angle:g} deg{turn}"
     typer.echo(f"{sample.title or sample.file_name}: {where}, {budget.model} model")
-    tables.show(tables.loss_table(budget))
+    tables.show(stack_tables.loss_table(budget))
 
 
 @app.command()
@@ -236,10 +236,10 @@ def describe(source: Source) -> None:
     Plasma frequency by every formula, pitch over wavelength, skin depth, wire loss.
     """
     from slabsim import api
-    from slabsim.report import tables
+    from slabsim.report import stack_tables, tables
 
     sample = api.load_stack(source)
-    tables.show(tables.description_tables(api.describe_stack(sample), sample.sweep.spectral_unit))
+    tables.show(stack_tables.description_tables(api.describe_stack(sample), sample.sweep.spectral_unit))
 
 
 @app.command()

@@ -10,16 +10,20 @@ if TYPE_CHECKING:
     from rich.console import Console
     from rich.progress import Task
 
+    from slabsim.stack.sample import Stack
 
-def announce_compilation() -> None:
+
+def announce_compilation(stack: Stack) -> None:
     """Say on a terminal that the first run of all takes longer."""
     from rich.console import Console
 
     from slabsim.engine.cache import is_compiled
+    from slabsim.engine.pack import takes_scalar_path
 
     console = Console(stderr=True)
-    if console.is_terminal and not is_compiled():
-        console.print("Compiling the engine for this processor, some 15 seconds, once ...")
+    entry = "solve" if takes_scalar_path(stack) else "solve_ports"
+    if console.is_terminal and not is_compiled(entry):
+        console.print("Compiling the engine for this processor, some 15 to 45 seconds, once ...")
 
 
 def bar() -> Progress:

@@ -33,9 +33,9 @@ def cache_folder() -> Path:
     return _writable(_candidates()) / _digest()
 
 
-def is_compiled() -> bool:
-    """Whether an earlier run left its compiled code; if not, the first solution waits for the compiler."""
-    return any(cache_folder().glob("**/*.nbc"))
+def is_compiled(entry: str) -> bool:
+    """Whether an earlier run left the code of an entry point, "solve" or "solve_ports"; else it is compiled first."""
+    return any(cache_folder().glob(f"**/*.{entry}-*.nbc"))
 
 
 def _candidates() -> list[Path]:

@@ -147,7 +147,7 @@ class _Waves:
         self.n_angles = angles_deg.size
         n_elements = recipe.elements.shape[0]
         self.states = np.zeros((n_elements + 1, ports.workspace(recipe.n_ports)))
-        ports.trace_ports(*recipe.arrays, *squares(angles_deg), recipe.metal_back, recipe.n_ports, self.states)
+        ports.trace_ports(recipe.arrays, *squares(angles_deg), recipe.metal_back, recipe.n_ports, self.states)
         self.counts = _port_counts(recipe)
         a = self._incident(polarization)
         self.a = [a]  # behind element 0, between elements 0 and 1, ..., in front of the last

@@ -140,8 +140,9 @@ def _plates(b, size):
 
 
 @kernel
-def _fold(b, n, size, n_state, n_rows, mirror, element, ends, table, at, by_angle):
+def _fold(b, n, size, n_state, n_rows, mirror, element, recipe, at, by_angle):
     """Put a layer of n ports (slots R, T, R_BACK, T_BACK) in front of the state; returns the ports of the new state."""
+    _, _, ends, table, _, _ = recipe
     r, t = HEAD + R * size, HEAD + T * size
     rb, tb = (r, t) if mirror else (HEAD + R_BACK * size, HEAD + T_BACK * size)
     g, h, x, u = HEAD + G * size, HEAD + H * size, HEAD + X * size, HEAD + U * size
@@ -346,8 +347,10 @@ def _gather(b, element, points, at, first, by_angle, n_rows):
 
 
 @kernel
-def _element(b, size, n_state, n_rows, element, terms, ends, table, points, at, first, by_angle):
+def _element(b, size, n_state, n_rows, e, recipe, at, first, by_angle):
     """One element of the recipe; returns the ports of the new state."""
+    elements, terms, _, table, points, _ = recipe
+    element = elements[e]
     kind, n = element[KIND], element[N_PORTS]
     if kind == SHEET:
         _sheet(b, size, element, table, at, by_angle)
@@ -366,7 +369,7 @@ def _element(b, size, n_state, n_rows, element, terms, ends, table, points, at, 
     elif kind == PLATES:
         _gather(b, element, points, at, first, by_angle, 8)
         _plates(b, size)
-        return _fold(b, 2, size, n_state, n_rows, True, element, ends, table, at, by_angle)
+        return _fold(b, 2, size, n_state, n_rows, True, element, recipe, at, by_angle)
     else:
         _generator(b, size, n, element, terms, table, at, by_angle)
         if kind == DIAGONAL:
@@ -375,7 +378,7 @@ def _element(b, size, n_state, n_rows, element, terms, ends, table, points, at, 
             slice_mirror(b, n, size)
         else:
             slice_tilted(b, n, size)
-        return _fold(b, n, size, n_state, n_rows, kind != TILTED, element, ends, table, at, by_angle)
+        return _fold(b, n, size, n_state, n_rows, kind != TILTED, element, recipe, at, by_angle)
     return n_state
 
 
@@ -460,13 +463,14 @@ def _square(z):
 
 
 @kernel
-def _group(b, size, elements, terms, ends, table, points, media, at, first, by_angle, metal_back, trace):
+def _group(b, size, recipe, at, first, by_angle, metal_back, trace):
     """Eight points, from the back to the front. With room in `trace`, the workspace after each element goes there."""
-    _begin(b, size, media, at, by_angle, metal_back)
+    n_elements = recipe[0].shape[0]
+    _begin(b, size, recipe[5], at, by_angle, metal_back)
     n_state = 2
     traced = trace.shape[0] > 0
     n_rows = 2
-    for e in range(elements.shape[0]):
+    for e in range(n_elements):
         if traced:  # rows of H that start as the identity: what reaches the far side of this element
             for k in range(b.size):
                 trace[e, k] = b[k]
@@ -475,24 +479,25 @@ def _group(b, size, elements, terms, ends, table, points, media, at, first, by_a
             clear(b, h + ELEMENT * 2 * n_state, n_state * n_state)
             for k in range(n_state):
                 store(b, h + ELEMENT * ((2 + k) * n_state + k), fill(1.0))
-        n_state = _element(b, size, n_state, n_rows, elements[e], terms, ends, table, points, at, first, by_angle)
+        n_state = _element(b, size, n_state, n_rows, e, recipe, at, first, by_angle)
     if traced:
         for k in range(b.size):
-            trace[elements.shape[0], k] = b[k]
+            trace[n_elements, k] = b[k]
 
 
 @njit(nogil=True, cache=True, error_model="numpy")
-def solve_ports(elements, terms, ends, table, points, media, sin2, cos2, metal_back, n_ports, amplitudes, powers):
+def solve_ports(recipe, sin2, cos2, metal_back, n_ports, amplitudes, powers):
     """Solve a grid of frequencies and angles at one azimuth.
 
     Parameters
     ----------
-    elements, terms, ends : int64 arrays, shapes (n_elements, N_COLUMNS), (n_terms, 4), (n_ends, 4)
-        Back to front; the columns are named in `port_rows`.
-    table : float array, shape (n_rows, n_freqs + LANES)
-        The last column repeated, so that eight frequencies can be read from any of them on.
-    points : float array, shape (n_point_rows, n_freqs, n_angles)
-    media : float array, shape (N_MEDIA, n_freqs)
+    recipe : tuple of arrays
+        elements, terms, ends: int64, shapes (n_elements, N_COLUMNS), (n_terms, 4), (n_ends, 4); back to front, the
+        columns are named in `port_rows`.
+        table: float, shape (n_rows, n_freqs + LANES); the last column repeated, so that eight frequencies can be read
+        from any of them on.
+        points: float, shape (n_point_rows, n_freqs, n_angles).
+        media: float, shape (N_MEDIA, n_freqs).
     sin2, cos2 : float arrays, shape (n_angles,)
         Squares of sine and cosine of the angle of incidence in the front medium.
     metal_back : bool
@@ -503,6 +508,7 @@ def solve_ports(elements, terms, ends, table, points, media, sin2, cos2, metal_b
     powers : float array of the same shape
         Filled with R, T.
     """
+    media = recipe[5]
     n_freqs, n_angles = media.shape[1], sin2.size
     size = ELEMENT * 4 * n_ports * n_ports
     b = np.zeros(HEAD + N_SLOTS * size)
@@ -516,7 +522,7 @@ def solve_ports(elements, terms, ends, table, points, media, sin2, cos2, metal_b
                 a = min(i0 + i, n_angles - 1) if by_angle else o
                 b[AT_S + i], b[AT_Q2 + i] = math.sqrt(sin2[a]), cos2[a]
             at, first = (o, i0) if by_angle else (i0, o)
-            _group(b, size, elements, terms, ends, table, points, media, at, first, by_angle, metal_back, nothing)
+            _group(b, size, recipe, at, first, by_angle, metal_back, nothing)
             for i in range(min(LANES, inner - i0)):
                 f, a = (o, i0 + i) if by_angle else (i0 + i, o)
                 for p in range(2):
@@ -527,17 +533,17 @@ def solve_ports(elements, terms, ends, table, points, media, sin2, cos2, metal_b
 
 
 @njit(nogil=True, cache=True, error_model="numpy")
-def trace_ports(elements, terms, ends, table, points, media, sin2, cos2, metal_back, n_ports, states):
+def trace_ports(recipe, sin2, cos2, metal_back, n_ports, states):
     """Workspace in front of and after every element, at one frequency and at most LANES angles.
 
-    Arrays as in `solve_ports`, with n_freqs = 1; `states`: float array, shape (n_elements + 1, workspace).
+    Arguments as in `solve_ports`, with n_freqs = 1; `states`: float array, shape (n_elements + 1, workspace).
     """
     size = ELEMENT * 4 * n_ports * n_ports
     b = np.zeros(HEAD + N_SLOTS * size)
     for i in range(LANES):
         a = min(i, sin2.size - 1)
         b[AT_S + i], b[AT_Q2 + i] = math.sqrt(sin2[a]), cos2[a]
-    _group(b, size, elements, terms, ends, table, points, media, 0, 0, True, metal_back, states)
+    _group(b, size, recipe, 0, 0, True, metal_back, states)
 
 
 def slot_size(n_ports: int) -> int:

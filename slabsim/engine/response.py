@@ -132,7 +132,7 @@ class Solver:
 
         shape = (2, 2, 2, recipe.media.shape[1], sin2.size)
         amplitudes, powers = np.empty(shape, dtype=complex), np.empty(shape)
-        ports.solve_ports(*recipe.arrays, sin2, cos2, recipe.metal_back, recipe.n_ports, amplitudes, powers)
+        ports.solve_ports(recipe.arrays, sin2, cos2, recipe.metal_back, recipe.n_ports, amplitudes, powers)
         absorbed = 1.0 - powers.sum(axis=(0, 2))
         if recipe.diffracts.any():
             marks = recipe.diffracts | (self.stack.mixes_polarizations & recipe.diffracts.any(axis=0))

@@ -6,7 +6,7 @@ from collections.abc import Iterator, Sequence
 
 from rich.box import SIMPLE_HEAD
 from rich.cells import cell_len
-from rich.console import Console, ConsoleOptions, RenderResult
+from rich.console import Console, ConsoleOptions, Group, RenderableType, RenderResult
 from rich.table import Table
 from rich.text import Text
 
@@ -75,3 +75,8 @@ def fact_table(rows: Sequence[tuple[str, str]]) -> Table:
     for name, value in rows:
         table.add_row(Text(name), Text(value))
     return table
+
+
+def titled(title: str, body: RenderableType) -> RenderableType:
+    """A table below its title."""
+    return Group(Text(title, style="bold"), body)

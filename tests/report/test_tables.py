@@ -9,7 +9,7 @@ from rich.console import Console
 from slabsim.analyses.comparison import compare_models
 from slabsim.analyses.description import describe_stack
 from slabsim.constants import C0
-from slabsim.report import tables
+from slabsim.report import stack_tables, tables
 from slabsim.stack.sample import Film, Group, Layer
 from tests.engine.twins import medium, stack, wires
 from tests.report.results import band, band_list, track
@@ -114,7 +114,7 @@ def test_description_shows_groups_sheets_and_both_ends_of_the_sweep():
     slab = Layer("slab", medium(2.0), 3e-3, wires(2e-3, 5e-5))
     group = Group(5, (Layer("skin", medium(4.0), 1e-3), Film("sheet", sheet_resistance=377.0)))
     sample = stack(group, slab, frequencies=np.array([10e9, 20e9]))
-    text = text_of(tables.description_tables(describe_stack(sample), "GHz"))
+    text = text_of(stack_tables.description_tables(describe_stack(sample), "GHz"))
     assert row_of(text, "1", "group") == ["1", "group", "repeated", "5", "times:"]
     assert row_of(text, "1.1")[1:6] == ["layer", "skin", "1", "mm", medium(4.0).name]
     assert row_of(text, "1.2")[1:] == ["film", "sheet", "377", "ohm", "per", "square"]
