@@ -25,6 +25,7 @@ import numpy as np
 
 from slabsim.engine import port_rows as rows
 from slabsim.engine.wire_numbers import WireNumbers, wire_numbers
+from slabsim.errors import InputError
 from slabsim.materials.mesh import stiffness
 from slabsim.stack.sample import ALONG_Z, Direction, Layer, Mesh, WireSet
 
@@ -102,6 +103,11 @@ def layer_generator(
         Of the plane of incidence [rad].
     reference : callable
         Reference kp [rad/m], shape (n_freqs,), of a set that is joined to the next layer, else None.
+
+    Raises
+    ------
+    InputError
+        If there are too many sets of wires parallel to the faces.
     """
     if is_local:
         return _local(layer, frequencies, index2, azimuth)
@@ -109,6 +115,11 @@ def layer_generator(
     found = Generator(2 + len(crossing) + (layer.mesh is not None))
     eps, mu = _tensor(layer, frequencies, azimuth, "eps"), _tensor(layer, frequencies, azimuth, "mu")
     _medium(found, eps, mu, index2)
+    if len(layer.wires) - len(crossing) > rows.MOST_SETS:
+        raise InputError(
+            f'layer "{layer.name}" has {len(layer.wires) - len(crossing)} sets of wires parallel to the faces; at most '
+            f"{rows.MOST_SETS} are allowed"
+        )
     for wires in layer.wires:
         numbers = wire_numbers(layer, wires, frequencies)
         n = turned(wires.direction, layer.rotation, azimuth)

@@ -30,6 +30,8 @@ ONE, SINE, COSINE2, RESONANCE = range(4)  # 1, s, q^2, and from 3 on 1/(c0 + c1 
 BEHIND, KEPT, RHO_BACK, RHO_FRONT = range(4)
 OWN = -1
 
+MOST_SETS = 16  # sets of wires in a layer, parallel to the faces, that the workspace has room for
+
 # Rows of an element, from ROW on
 DEPTH = 0  # layers: k0 d
 Y_SHEET, TILT, FORM = 0, 2, 4  # SHEET: as in `rows`

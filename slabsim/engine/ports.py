@@ -53,7 +53,7 @@ from slabsim.engine.vector_math import decay, inverse, root, sincos, wave
 AT_POINT = AT_MEDIA  # eight rows of a point table
 AT_WAVES = AT_MEDIA + 64  # rows of one mode of a diagonal layer
 AT_INVERSES = AT_MEDIA + 256  # 1/(c0 + c1 q^2) of the sets parallel to the faces
-MOST_RESONANCES = (HEAD - AT_INVERSES) // ELEMENT
+assert AT_INVERSES + ELEMENT * MOST_SETS <= HEAD
 
 
 @kernel

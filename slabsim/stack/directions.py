@@ -15,7 +15,7 @@ def tilted(tilt_deg: float, azimuth_deg: float) -> Direction:
     """Unit vector at an angle from z, its projection on the faces at an azimuth from x [degrees]."""
     c, s = cos_sin_deg(tilt_deg)
     ca, sa = cos_sin_deg(azimuth_deg)
-    return s * ca, s * sa, c
+    return s * ca + 0.0, s * sa + 0.0, c + 0.0  # no -0
 
 
 def cos_sin_deg(angle_deg: float) -> tuple[float, float]:

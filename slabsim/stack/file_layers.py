@@ -18,6 +18,7 @@ from slabsim.stack.quantities import (
 from slabsim.units import Quantity, format_length
 
 MAX_ELEMENTS = 10_000  # layers and sheets, groups written out
+MAX_SETS = 16  # of wires in a layer
 _NAME = Field("", description="Free text; messages and reports use it")
 Shape = Literal["layer", "plates", "patches", "strips", "film", "grid", "group"]
 _SHAPES: dict[Shape, tuple[str, ...]] = {
@@ -43,7 +44,7 @@ class LayerTable(FileTable):
     material: Host = Field(description='A defined material, or "vacuum"')
     thickness: Length = Field(description='Thickness of the layer, such as "10 mm"')
     wires: list[WireTable] | None = Field(
-        None, min_length=1, description="The sets of wires in this layer, each a [[layer.wires]]"
+        None, min_length=1, max_length=MAX_SETS, description="The sets of wires in this layer, each a [[layer.wires]]"
     )
     mesh: MeshTable | None = Field(None, description='Joined wires, { pitch = "2 mm", radius = "50 um", metal = ... }')
     rotation: AzimuthAngle = Field(

@@ -5,8 +5,11 @@ import pytest
 
 from slabsim.engine.fields import absorbed_by_element
 from slabsim.engine.response import Solver
-from slabsim.stack.sample import Film, Grid, Layer, Patches, Stack, Strips
-from tests.engine.mixed_twins import random_mixed_stack, reference
+from slabsim.errors import InputError
+from slabsim.stack.directions import tilted
+from slabsim.stack.sample import Film, Grid, Layer, Patches, Stack, Strips, WireSet
+from tests.engine.mixed_twins import axes_medium, random_mixed_stack, reference
+from tests.engine.twins import GROUNDED, OPEN, medium, stack, wires
 
 N_STACKS, N_GROUPS = 320, 16
 DIGITS = 1e-10
@@ -22,9 +25,9 @@ def draw(seed: int) -> tuple[Stack, float, float, float, str]:
 @pytest.mark.parametrize("group", range(N_GROUPS))
 def test_jones_matrices_and_absorption_agree_with_the_dense_solution(group):
     for seed in range(group, N_STACKS, N_GROUPS):
-        stack, frequency, angle_deg, azimuth_deg, model = draw(seed)
-        response = Solver(stack, model, ("TE", "TM")).solve(frequency, angle_deg, azimuth_deg)
-        expected = reference(stack, frequency, angle_deg, azimuth_deg, model)
+        sample, frequency, angle_deg, azimuth_deg, model = draw(seed)
+        response = Solver(sample, model, ("TE", "TM")).solve(frequency, angle_deg, azimuth_deg)
+        expected = reference(sample, frequency, angle_deg, azimuth_deg, model)
         for row, channel in enumerate(response.channels):
             into, out = CHANNELS[channel]
             assert abs(response.r[row, 0, 0] - expected.r[into][out]) < DIGITS, (seed, channel)
@@ -35,15 +38,15 @@ def test_jones_matrices_and_absorption_agree_with_the_dense_solution(group):
         assert np.max(abs(response.A[:, 0, 0] - expected.A)) < DIGITS, seed
         for p, polarization in enumerate(("TE", "TM")):
             place = (frequency, angle_deg, polarization, model, azimuth_deg)
-            absorbed = absorbed_by_element(stack, *place)[:, 0]
-            assert np.max(abs(absorbed - booked(stack, expected, p))) < DIGITS, (seed, polarization)
+            absorbed = absorbed_by_element(sample, *place)[:, 0]
+            assert np.max(abs(absorbed - booked(sample, expected, p))) < DIGITS, (seed, polarization)
 
 
-def booked(stack: Stack, expected, p: int) -> np.ndarray:
+def booked(sample: Stack, expected, p: int) -> np.ndarray:
     """Loss per element of the reference; a load in a joint counts with the layer in front, which gives it here."""
     assert not any(
         wires.ends[0].kind == "joined" and wires.ends[0].load
-        for layer in stack.flatten()
+        for layer in sample.flatten()
         if isinstance(layer, Layer)
         for wires in layer.wires
     )
@@ -52,7 +55,7 @@ def booked(stack: Stack, expected, p: int) -> np.ndarray:
 
 def test_the_sample_holds_every_kind_of_element_and_end():
     drawn = [draw(seed) for seed in range(N_STACKS)]
-    elements = [(e, f) for stack, f, *_ in drawn for e in stack.flatten()]
+    elements = [(e, f) for sample, f, *_ in drawn for e in sample.flatten()]
     layers = [(e, f) for e, f in elements if isinstance(e, Layer)]
     sets = [w for layer, _ in layers for w in layer.wires]
     ends = [end for w in sets if w.crosses_faces for end in w.ends]
@@ -77,9 +80,34 @@ def test_the_sample_holds_every_kind_of_element_and_end():
         "loaded": sum(end.kind == "grounded" and end.load is not None for end in ends),
         "grids": sum(isinstance(e, Grid) for e, _ in elements),
         "patches, strips, films": sum(isinstance(e, Patches | Strips | Film) for e, _ in elements),
-        "metal back": sum(stack.back is None for stack, *_ in drawn),
+        "metal back": sum(sample.back is None for sample, *_ in drawn),
         "normal incidence": sum(angle == 0.0 for _, _, angle, *_ in drawn),
         "grazing": sum(angle > 89.9 for _, _, angle, *_ in drawn),
         "azimuth along an axis": sum(azimuth in (0.0, 90.0) for *_, azimuth, _ in drawn),
     }
     assert min(counts.values()) >= 10, counts
+
+
+def test_a_layer_with_many_sets():
+    directions = [
+        tilted(tilt, azimuth) for tilt, azimuth in ((20, 0), (30, 120), (50, -100), (0, 0), (90, 30), (90, 80))
+    ]
+    sets = tuple(
+        WireSet((5e-3 + 1e-4 * k, 4e-3), 0.1e-3, None, (GROUNDED if k % 2 else OPEN, OPEN), direction=n)
+        for k, n in enumerate(directions)
+    )
+    sample = stack(Film("film", 300.0), Layer("many", axes_medium((2.0, 2.2, 2.5 + 0.1j)), 8e-3, sets))
+    response = Solver(sample, polarizations=("TE", "TM")).solve(11e9, 35.0, 20.0)
+    expected = reference(sample, 11e9, 35.0, 20.0)
+    for row, channel in enumerate(response.channels):
+        into, out = CHANNELS[channel]
+        assert abs(response.t[row, 0, 0] - expected.t[into][out]) < 1e-12
+        assert abs(response.r[row, 0, 0] - expected.r[into][out]) < 1e-12
+
+
+def test_more_sets_than_there_is_room_for_are_refused():
+    sets = wires(5e-3, 0.1e-3, direction=(1.0, 0.0, 0.0)) * 17
+    with pytest.raises(
+        InputError, match='layer "many" has 17 sets of wires parallel to the faces; at most 16 are allowed'
+    ):
+        Solver(stack(Layer("many", medium(2.0), 8e-3, sets))).solve(1e10, 0.0)

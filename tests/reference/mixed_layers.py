@@ -161,7 +161,8 @@ def mean_across(values: Axes, n: Axes) -> Any:
     determinant = a**2 * y * z + b**2 * x * z + c**2 * x * y
     half = mp.sqrt(trace**2 / 4 - determinant)
     roots = [mp.sqrt(trace / 2 + half), mp.sqrt(trace / 2 - half)]
-    return mp.fprod(-root if mp.im(root) < 0 else root for root in roots)
+    # a lossless eigenvalue may have an imaginary part of rounding: n is a unit vector in double precision only
+    return mp.fprod(-root if mp.im(root) < -1e-12 * abs(root) else root for root in roots)
 
 
 def _transverse(values: Axes, rotation: Number) -> tuple[Any, Any, Any]:
