@@ -14,7 +14,7 @@ from pathlib import Path
 
 _COMPILED = (
     *("rows.py", "vector_math.py", "coalescing.py", "half_spaces.py", "kernels.py"),
-    *("port_rows.py", "lanes.py", "matrices.py", "slices.py", "ports.py"),
+    *("port_rows.py", "lanes.py", "matrices.py", "slices.py", "port_state.py", "ports.py"),
 )
 
 

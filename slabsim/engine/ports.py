@@ -4,12 +4,7 @@ Fields are taken along the plane of incidence (p) and across it (s): v = (Ep, Es
 pair (psi, V) for every set of wires that ends at the faces: phi = i psi/kp, n_z w = i kp V. Waves a = (v + i)/2,
 b = (v - i)/2; a reference admittance y scales v by sqrt(y) and i by 1/sqrt(y), the same for all ports of an element.
 
-    state, from the back to the front:  b = G a (all that lies behind),  c = H a (amplitudes leaving at the back)
-    a layer (R, T, R', T'):             G <- R + T' G (1 - R' G)^-1 T     H <- H (1 - R' G)^-1 T
-    an end of wires:                    closes its port with the reflection coefficient rho of what it ends on
-    a sheet of admittance Y:            G <- (1 + G)(1 + K)^-1 - 1        H <- H (1 + K)^-1     K = Y (1 + G)/2
-    a set of wires in one plane:        Y = n n^T/z, of rank one
-    a load in a joint:                  psi drops by z V, of rank one
+The state G, H and the steps that change it stand in `port_state.py`; scattering matrices of layers in `slices.py`.
 
 Ends are closed inside the layer, or at the end of a run of joined wires, so that the cascade sees two ports only.
 Nothing grows, and all that is inverted has a Hermitian part that is not negative, as long as the media are passive.
@@ -22,8 +17,9 @@ from numba import njit
 
 from slabsim.engine.half_spaces import kernel, outgoing
 from slabsim.engine.lanes import fill, fma, load, store
-from slabsim.engine.matrices import ELEMENT, add_to_diagonal, clear, copy, divide, multiply, one_minus_product
+from slabsim.engine.matrices import ELEMENT, clear, copy
 from slabsim.engine.port_rows import *
+from slabsim.engine.port_state import fold, rescale, series, shunt, value
 from slabsim.engine.rows import LANES, PATCHES, STRIPS
 from slabsim.engine.slices import (
     AT_DEPTH,
@@ -32,8 +28,6 @@ from slabsim.engine.slices import (
     AT_S,
     HEAD,
     N_SLOTS,
-    R_BACK,
-    T_BACK,
     A,
     B,
     D,
@@ -42,9 +36,6 @@ from slabsim.engine.slices import (
     R,
     T,
     U,
-    V,
-    W,
-    X,
     slice_mirror,
     slice_tilted,
 )
@@ -57,23 +48,15 @@ assert AT_INVERSES + ELEMENT * MOST_SETS <= HEAD
 
 
 @kernel
-def _value(table, row, at, by_angle):
-    """Eight lanes of one row: one frequency in all of them, or eight frequencies."""
-    if by_angle:
-        return fill(table[row, at])
-    return load(table[row], at)
-
-
-@kernel
 def _generator(b, size, n, element, terms, table, at, by_angle):
     """The blocks A, B and D of a layer."""
     row = element[ROW]
-    store(b, AT_DEPTH, _value(table, row + DEPTH, at, by_angle))
+    store(b, AT_DEPTH, value(table, row + DEPTH, at, by_angle))
     for k in range(element[N_RESONANCES]):
         first = row + element[FIRST_RESONANCE] + 4 * k
         q2 = load(b, AT_Q2)
-        re = fma(_value(table, first + 2, at, by_angle), q2, _value(table, first, at, by_angle))
-        im = fma(_value(table, first + 3, at, by_angle), q2, _value(table, first + 1, at, by_angle))
+        re = fma(value(table, first + 2, at, by_angle), q2, value(table, first, at, by_angle))
+        im = fma(value(table, first + 3, at, by_angle), q2, value(table, first + 1, at, by_angle))
         scale = fill(1.0) / fma(re, re, im * im)
         store(b, AT_INVERSES + ELEMENT * k, re * scale)
         store(b, AT_INVERSES + ELEMENT * k + 8, fill(0.0) - im * scale)
@@ -82,8 +65,8 @@ def _generator(b, size, n, element, terms, table, at, by_angle):
     for k in range(element[FIRST_TERM], element[FIRST_TERM] + element[N_TERMS]):
         block, entry, multiplier = terms[k, BLOCK], terms[k, ENTRY], terms[k, MULTIPLIER]
         target = HEAD + block * size + ELEMENT * entry
-        re = _value(table, row + terms[k, COEFFICIENT], at, by_angle)
-        im = _value(table, row + terms[k, COEFFICIENT] + 1, at, by_angle)
+        re = value(table, row + terms[k, COEFFICIENT], at, by_angle)
+        im = value(table, row + terms[k, COEFFICIENT] + 1, at, by_angle)
         if multiplier >= RESONANCE:
             inv = AT_INVERSES + ELEMENT * (multiplier - RESONANCE)
             fr, fi = load(b, inv), load(b, inv + 8)
@@ -140,117 +123,11 @@ def _plates(b, size):
 
 
 @kernel
-def _fold(b, n, size, n_state, n_rows, mirror, element, recipe, at, by_angle):
-    """Put a layer of n ports (slots R, T, R_BACK, T_BACK) in front of the state; returns the ports of the new state."""
-    _, _, ends, table, _, _ = recipe
-    r, t = HEAD + R * size, HEAD + T * size
-    rb, tb = (r, t) if mirror else (HEAD + R_BACK * size, HEAD + T_BACK * size)
-    g, h, x, u = HEAD + G * size, HEAD + H * size, HEAD + X * size, HEAD + U * size
-    if n > 2 or n_state > 2:
-        _widen(b, n, size, n_state, n_rows, element, ends, table, at, by_angle)
-    one_minus_product(b, n, rb, g, x)
-    copy(b, n * n, t, u)
-    divide(b, n, n, x, u)  # (1 - R' G)^-1 T
-    multiply(b, n_rows, n, n, h, u, x, False)
-    copy(b, n_rows * n, x, h)
-    multiply(b, n, n, n, g, u, x, False)
-    copy(b, n * n, r, g)
-    multiply(b, n, n, n, tb, x, g, True)
-    n_left = n
-    for port in range(n - 1, 1, -1):
-        end = element[FIRST_END] + port - 2
-        if ends[end, KEPT] == 0:
-            rho = element[ROW] + ends[end, RHO_FRONT]
-            _close(
-                b, n_left, size, n_rows, port, _value(table, rho, at, by_angle), _value(table, rho + 1, at, by_angle)
-            )
-            n_left -= 1
-    return n_left
-
-
-@kernel
-def _widen(b, n, size, n_state, n_rows, element, ends, table, at, by_angle):
-    """From the ports of the state to those of the layer: joined ones go on, the others end."""
-    g, h, x, u = HEAD + G * size, HEAD + H * size, HEAD + X * size, HEAD + U * size
-    copy(b, n_state * n_state, g, x)
-    copy(b, n_rows * n_state, h, u)
-    clear(b, g, n * n)
-    clear(b, h, n_rows * n)
-    for i in range(n):
-        state_i = i if i < 2 else ends[element[FIRST_END] + i - 2, BEHIND]
-        if state_i == OWN:
-            row = element[ROW] + ends[element[FIRST_END] + i - 2, RHO_BACK]
-            store(b, g + ELEMENT * i * (n + 1), _value(table, row, at, by_angle))
-            store(b, g + ELEMENT * i * (n + 1) + 8, _value(table, row + 1, at, by_angle))
-            continue
-        for j in range(n):
-            state_j = j if j < 2 else ends[element[FIRST_END] + j - 2, BEHIND]
-            if state_j != OWN:
-                copy(b, 1, x + ELEMENT * (state_i * n_state + state_j), g + ELEMENT * (i * n + j))
-        for k in range(n_rows):
-            copy(b, 1, u + ELEMENT * (k * n_state + state_i), h + ELEMENT * (k * n + i))
-
-
-@kernel
-def _close(b, n, size, n_rows, port, rho_re, rho_im):
-    """End the wires of one port in front, where a = rho b: its column and row are folded into the others."""
-    g, h, x, u, w = HEAD + G * size, HEAD + H * size, HEAD + X * size, HEAD + U * size, HEAD + W * size
-    own = g + ELEMENT * port * (n + 1)
-    gr, gi = load(b, own), load(b, own + 8)
-    store(b, x, fill(1.0) - (rho_re * gr - rho_im * gi))
-    store(b, x + 8, fill(0.0) - (rho_re * gi + rho_im * gr))
-    store(b, u, rho_re)
-    store(b, u + 8, rho_im)
-    divide(b, 1, 1, x, u)  # rho/(1 - rho G_jj)
-    copy(b, n, g + ELEMENT * port * n, w)
-    multiply(b, 1, 1, n, u, w, x, False)  # a of the port, from a of the others
-    _fold_column(b, n, n, port, x, g, w)
-    _fold_column(b, n_rows, n, port, x, h, w)
-    _drop_row(b, n - 1, port, g)
-
-
-@kernel
-def _fold_column(b, n_rows, n, port, row, out, column):
-    """out <- out + (column `port` of out) row, without that column."""
-    for i in range(n_rows):
-        copy(b, 1, out + ELEMENT * (i * n + port), column + ELEMENT * i)
-    multiply(b, n_rows, 1, n, column, row, out, True)
-    target = 0
-    for k in range(n_rows * n):
-        if k % n != port:
-            copy(b, 1, out + ELEMENT * k, out + ELEMENT * target)
-            target += 1
-
-
-@kernel
-def _drop_row(b, n, port, x):
-    for k in range(port * n, n * n):
-        copy(b, 1, x + ELEMENT * (k + n), x + ELEMENT * k)
-
-
-@kernel
-def _shunt(b, size, n_rows):
-    """A sheet whose admittance stands in slot U, halved: K = Y (1 + G)/2, then (1 + G)(1 + K)^-1 - 1."""
-    g, h, x, u, v = HEAD + G * size, HEAD + H * size, HEAD + X * size, HEAD + U * size, HEAD + V * size
-    add_to_diagonal(b, 2, g, 1.0)
-    multiply(b, 2, 2, 2, u, g, x, False)
-    add_to_diagonal(b, 2, x, 1.0)
-    clear(b, v, 4)
-    add_to_diagonal(b, 2, v, 1.0)
-    divide(b, 2, 2, x, v)
-    multiply(b, 2, 2, 2, g, v, x, False)
-    add_to_diagonal(b, 2, x, -1.0)
-    copy(b, 4, x, g)
-    multiply(b, n_rows, 2, 2, h, v, x, False)
-    copy(b, 2 * n_rows, x, h)
-
-
-@kernel
 def _sheet(b, size, element, table, at, by_angle):
     """Half the admittance of a sheet into slot U."""
     u, row = HEAD + U * size, element[ROW]
-    re, im = _value(table, row + Y_SHEET, at, by_angle), _value(table, row + Y_SHEET + 1, at, by_angle)
-    tr, ti = _value(table, row + TILT, at, by_angle), _value(table, row + TILT + 1, at, by_angle)
+    re, im = value(table, row + Y_SHEET, at, by_angle), value(table, row + Y_SHEET + 1, at, by_angle)
+    tr, ti = value(table, row + TILT, at, by_angle), value(table, row + TILT + 1, at, by_angle)
     s2 = load(b, AT_S) * load(b, AT_S)
     form = table[row + FORM, at]
     clear(b, u, 4)
@@ -277,61 +154,9 @@ def _grid(b, size, element, table, at, by_angle):
     scale = fill(1.0) / fma(zr, zr, zi * zi)
     yr, yi = zr * scale, fill(0.0) - zi * scale
     for k in range(4):
-        weight = _value(table, row + DIRECTION + (k + 1) // 2, at, by_angle)
+        weight = value(table, row + DIRECTION + (k + 1) // 2, at, by_angle)
         store(b, u + ELEMENT * k, weight * yr)
         store(b, u + ELEMENT * k + 8, weight * yi)
-
-
-@kernel
-def _series(b, n, size, n_rows, port, zr, zi):
-    """A load in the joint of one port; zr + i zi is half its impedance. M = 1 - G, f = z/(1 + z M_jj):
-    G <- G + f M_j M_j^T, H <- H - f H_j M_j^T, and H_j (1 - f M_jj) = H_j/(1 + z M_jj)."""
-    g, h, x = HEAD + G * size, HEAD + H * size, HEAD + X * size
-    u, v, w = HEAD + U * size, HEAD + V * size, HEAD + W * size
-    own = g + ELEMENT * port * (n + 1)
-    mr, mi = fill(1.0) - load(b, own), fill(0.0) - load(b, own + 8)
-    store(b, x, fill(1.0) + (zr * mr - zi * mi))
-    store(b, x + 8, zr * mi + zi * mr)
-    store(b, u, zr)
-    store(b, u + 8, zi)
-    store(b, u + ELEMENT, fill(1.0))
-    store(b, u + ELEMENT + 8, fill(0.0))
-    divide(b, 1, 2, x, u)  # f, and 1/(1 + z M_jj)
-    for j in range(n):  # row and column of M
-        for part in (0, 8):
-            one = fill(1.0) if j == port and part == 0 else fill(0.0)
-            store(b, v + ELEMENT * j + part, one - load(b, g + ELEMENT * (port * n + j) + part))
-            store(b, w + ELEMENT * j + part, one - load(b, g + ELEMENT * (j * n + port) + part))
-    multiply(b, 1, 1, n, u, v, x, False)
-    multiply(b, n, 1, n, w, x, g, True)
-    for i in range(n_rows):
-        copy(b, 1, h + ELEMENT * (i * n + port), w)
-        multiply(b, 1, 1, 1, w, u + ELEMENT, v, False)
-        for part in (0, 8):
-            store(b, w + part, fill(0.0) - load(b, w + part))
-        multiply(b, 1, 1, n, w, x, h + ELEMENT * i * n, True)
-        copy(b, 1, v, h + ELEMENT * (i * n + port))
-
-
-@kernel
-def _rescale(b, n, size, n_rows, gain, loss):
-    """Another reference admittance: G <- (loss + gain G)(gain + loss G)^-1, H <- H (gain + loss G)^-1."""
-    g, h, x, u = HEAD + G * size, HEAD + H * size, HEAD + X * size, HEAD + U * size
-    for k in range(2 * n * n):
-        value = load(b, g + 8 * k)
-        store(b, x + 8 * k, loss * value)
-        store(b, g + 8 * k, gain * value)
-    for i in range(n):
-        at = ELEMENT * i * (n + 1)
-        store(b, x + at, load(b, x + at) + gain)
-        store(b, g + at, load(b, g + at) + loss)
-    clear(b, u, n * n)
-    add_to_diagonal(b, n, u, 1.0)
-    divide(b, n, n, x, u)
-    multiply(b, n, n, n, g, u, x, False)
-    copy(b, n * n, x, g)
-    multiply(b, n_rows, n, n, h, u, x, False)
-    copy(b, n_rows * n, x, h)
 
 
 @kernel
@@ -354,22 +179,22 @@ def _element(b, size, n_state, n_rows, e, recipe, at, first, by_angle):
     kind, n = element[KIND], element[N_PORTS]
     if kind == SHEET:
         _sheet(b, size, element, table, at, by_angle)
-        _shunt(b, size, n_rows)
+        shunt(b, size, n_rows)
     elif kind == GRID:
         _gather(b, element, points, at, first, by_angle, 2)
         _grid(b, size, element, table, at, by_angle)
-        _shunt(b, size, n_rows)
+        shunt(b, size, n_rows)
     elif kind == SERIES:
         row = element[ROW] + LOAD
-        zr, zi = _value(table, row, at, by_angle), _value(table, row + 1, at, by_angle)
-        _series(b, n_state, size, n_rows, element[PORT], zr, zi)
+        zr, zi = value(table, row, at, by_angle), value(table, row + 1, at, by_angle)
+        series(b, n_state, size, n_rows, element[PORT], zr, zi)
     elif kind == RESCALE:
-        gain = _value(table, element[ROW] + GAIN, at, by_angle)
-        _rescale(b, n_state, size, n_rows, gain, _value(table, element[ROW] + LOSS, at, by_angle))
+        gain = value(table, element[ROW] + GAIN, at, by_angle)
+        rescale(b, n_state, size, n_rows, gain, value(table, element[ROW] + LOSS, at, by_angle))
     elif kind == PLATES:
         _gather(b, element, points, at, first, by_angle, 8)
         _plates(b, size)
-        return _fold(b, 2, size, n_state, n_rows, True, element, recipe, at, by_angle)
+        return fold(b, 2, size, n_state, n_rows, True, element, recipe, at, by_angle)
     else:
         _generator(b, size, n, element, terms, table, at, by_angle)
         if kind == DIAGONAL:
@@ -378,7 +203,7 @@ def _element(b, size, n_state, n_rows, e, recipe, at, first, by_angle):
             slice_mirror(b, n, size)
         else:
             slice_tilted(b, n, size)
-        return _fold(b, n, size, n_state, n_rows, kind != TILTED, element, recipe, at, by_angle)
+        return fold(b, n, size, n_state, n_rows, kind != TILTED, element, recipe, at, by_angle)
     return n_state
 
 

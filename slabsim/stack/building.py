@@ -183,14 +183,17 @@ def _electric(table: MaterialTable) -> Constant | Drude | Lorentz | Debye | Axes
     value = 1.0 if table.permittivity is None else table.permittivity
     loss = table.loss_tangent or 0.0, table.conductivity or 0.0
     if isinstance(value, ElectricAxesTable):
-        return Constant(value.xx, *loss), Constant(value.yy, *loss), Constant(value.zz, *loss)
+        axes = Constant(value.xx, *loss), Constant(value.yy, *loss), Constant(value.zz, *loss)
+        return axes if len(set(axes)) > 1 else axes[0]
     return Constant(value, *loss)
 
 
 def _permeability(table: MaterialTable) -> Constant | ResonantPermeability | Axes | None:
     given = table.permeability
     if isinstance(given, MagneticAxesTable):
-        return _magnetic(given.xx), _magnetic(given.yy), _magnetic(given.zz)
+        if not given.xx == given.yy == given.zz:
+            return _magnetic(given.xx), _magnetic(given.yy), _magnetic(given.zz)
+        given = given.xx
     return None if given == 1.0 else _magnetic(given)
 
 

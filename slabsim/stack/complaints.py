@@ -98,7 +98,7 @@ class Complaints:
             case "literal_error":
                 words = re.findall(r"'([^']*)'", context["expected"])
                 hint = suggestion(value, words) if isinstance(value, str) else ""
-                return f"{show(value)}; {_one_of(words)}{hint}"
+                return f"{show(value)}; {_one_of(words)}{hint or _or_a_table(allowed_keys(error['loc']))}"
             case "too_short" | "too_long":
                 return _wrong_length(error)
             case "list_type" if isinstance(value, dict) and path[-1] in _TABLE_ARRAYS:
@@ -198,6 +198,10 @@ def _missing(location: tuple[str | int, ...]) -> str:
 def _one_of(words: list[str]) -> str:
     quoted = [f'"{word}"' for word in words]
     return f"allowed is {quoted[0]}" if len(words) == 1 else f"allowed are {', '.join(quoted)}"
+
+
+def _or_a_table(keys: list[str]) -> str:
+    return f", or a table {{ {', '.join(keys)} }}" if keys else ""
 
 
 def _header(path: Path) -> str:

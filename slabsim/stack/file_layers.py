@@ -189,8 +189,10 @@ def entry_complaint(value: Any) -> str:
     if not isinstance(value, dict):
         return f"an entry must be a table: {ENTRY_FORMS}"
     markers = [key for keys in _SHAPES.values() for key in keys]
-    found = [key for key in value if key in markers] or [key for key in value if key == "thickness"]
+    found = [key for key in value if key in markers]
     if found:
+        if len(found) == 1:  # what is at odds with the one marker
+            found += [key for key in value if key == "thickness"]
         return f"{' and '.join(found)} in one entry; an entry is either {ENTRY_FORMS}"
     unknown = [key for key in value if key != "name"]
     for key in unknown:

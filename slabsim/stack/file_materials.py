@@ -115,8 +115,9 @@ def _number_or_table(value: Any) -> str:
 
 
 def _magnetic_form(value: Any) -> str:
+    # "x" for "xx" means axes too: so the fault names them, not the keys of a resonance
     has_axes = isinstance(value, MagneticAxesTable) or (
-        isinstance(value, dict) and bool({"xx", "yy", "zz"} & set(value))
+        isinstance(value, dict) and any(key[:1] in ("x", "y", "z") for key in value)
     )
     return "axes" if has_axes else _number_or_table(value)
 

@@ -60,6 +60,10 @@ class EndedWires:
         """Whether both have one direction and one cell."""
         return self.runs_like(other) and self.table.cell == other.table.cell
 
+    def goes_on(self, side: int) -> bool:
+        """Whether the end at a face without a conductor is a joint: "joined" or a load."""
+        return self.table.ends[side] == "joined" or isinstance(self.table.ends[side], LoadTable)
+
 
 @dataclass(frozen=True)
 class Place:
@@ -150,17 +154,30 @@ def _face(places: list[Place], index: int, side: int, is_backed: bool, wires: En
         sheets.append(places[index])
         index += step
     beyond = places[index] if 0 <= index < len(places) else None
-    partner = _partner(own, wires, beyond) if beyond is not None and not sheets else None
+    partner = _partner(own, wires, beyond, side) if beyond is not None and not sheets else None
     return _Face(tuple(sheets), beyond, is_backed and side == 1 and beyond is None, side, partner)
 
 
-def _partner(own: Place, wires: EndedWires, beyond: Place) -> EndedWires | None:
-    """The set that fits; of several alike the one of the same rank; if none fits, the one nearest to it."""
+def _partner(own: Place, wires: EndedWires, beyond: Place, side: int) -> EndedWires | None:
+    """The set that these wires go on in: of several that fit, joined sets pair off in the order of the file.
+
+    Without one, the set that comes nearest, for the message: one that fits but is open, one of that direction, any.
+    """
+    if not wires.goes_on(side):
+        return None
     fitting = [other for other in beyond.wires if wires.fits(other)]
-    rank = [other for other in own.wires if wires.fits(other)].index(wires)
-    if rank < len(fitting):
-        return fitting[rank]
-    return next((other for other in beyond.wires if wires.runs_like(other)), next(iter(beyond.wires), None))
+    facing = [other for other in fitting if other.goes_on(1 - side)]
+    rank = [other for other in own.wires if wires.fits(other) and other.goes_on(side)].index(wires)
+    if rank < len(facing):
+        return facing[rank]
+    idle = [other for other in fitting if not other.goes_on(1 - side)]
+    if facing and not idle:
+        raise _ImpossibleEndError(
+            "joined, but every set of this direction and cell in the next layer is joined to another set already; "
+            "each set needs a partner of its own"
+        )
+    nearest = idle or [other for other in beyond.wires if wires.runs_like(other)] or list(beyond.wires)
+    return nearest[0] if nearest else None
 
 
 def _kind_of(wires: EndedWires, face: _Face) -> EndKind | None:
