@@ -123,13 +123,12 @@ def describe_stack(stack: Stack) -> Description:
 def _notes(stack: Stack) -> Iterator[str]:
     if any(isinstance(element, Grid | Plates) for element in stack.flatten()):
         sweep = stack.sweep
-        lowest = [onset(stack, sweep.angles_deg[[0, -1]], float(azimuth)) for azimuth in sweep.azimuths_deg]
-        first, last = (min(float(one[k]) for one in lowest) for k in (0, -1))
-        angles = f"{sweep.angles_deg[0]:g} and {sweep.angles_deg[-1]:g} deg"
-        edges = [format_spectral(edge, sweep.spectral_unit) if np.isfinite(edge) else "never" for edge in (first, last)]
+        angles = np.unique(sweep.angles_deg[[0, -1]])
+        lowest = np.min([onset(stack, angles, float(azimuth)) for azimuth in sweep.azimuths_deg], axis=0)
+        edges = [format_spectral(edge, sweep.spectral_unit) if np.isfinite(edge) else "no frequency" for edge in lowest]
         yield (
-            f"Diffraction, or a second mode between plates, sets in at {edges[0]} and {edges[1]} ({angles}); beyond it "
-            "the map holds NaN."
+            f"Diffraction, or a second mode between plates, sets in at {' and '.join(edges)} "
+            f"({' and '.join(f'{angle:g}' for angle in angles)} deg); beyond it the map holds NaN."
         )
 
 
@@ -144,13 +143,17 @@ def _rows(elements: tuple[Element, ...], prefix: str, ends: tuple[float, float])
             eps = _pair(element.material, ends)
             yield Row(place, kind, element.name, element.thickness, element.material.name, eps, _layer_detail(element))
         elif isinstance(element, Plates):
-            index = np.sqrt(np.maximum(element.filling.permittivity(ends[-1]).real, 0.0))
-            cut_off = format_frequency(float(C0 / (2.0 * element.spacing * index))) if index > 0.0 else "-"
-            detail = f"normal to {element.normal}, spacing {format_length(element.spacing)}, cut-off {cut_off}"
             eps = _pair(element.filling, ends)
+            detail = _plates_detail(element, ends[-1])
             yield Row(place, "plates", element.name, element.thickness, element.filling.name, eps, detail)
         else:
             yield Row(place, *_sheet_words(element))
+
+
+def _plates_detail(plates: Plates, frequency: float) -> str:
+    index2 = float((plates.filling.permittivity(frequency) * plates.filling.permeability(frequency)).real)
+    cut_off = format_frequency(C0 / (2.0 * plates.spacing * index2**0.5)) if index2 > 0.0 else "-"
+    return f"normal to {plates.normal}, spacing {format_length(plates.spacing)}, cut-off {cut_off}"
 
 
 def _sheet_words(sheet: Sheet) -> tuple[str, str, None, str, None, str]:

@@ -42,7 +42,9 @@ def onset(stack: Stack, angles_deg: np.ndarray, azimuth_deg: float = 0.0) -> np.
             p = np.deg2rad(azimuth_deg)
             along = element.direction[0] * np.cos(p) + element.direction[1] * np.sin(p)
             index = max(_index(side, middle) for side in neighbours(elements, position, stack))
-            lowest = np.minimum(lowest, _grating(element.pitch, index, sine * along, sine * np.sqrt(1.0 - along**2)))
+            lowest = np.minimum(
+                lowest, _grating(element.pitch, index, sine * along, sine * np.sqrt(max(1.0 - along**2, 0.0)))
+            )
         elif isinstance(element, Plates):
             index = _index(element.filling, middle)
             if incidence_along(element, azimuth_deg):

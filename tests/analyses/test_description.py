@@ -1,11 +1,14 @@
 import numpy as np
 import pytest
+from scipy.special import j0
 
 from slabsim.analyses.description import describe_stack
 from slabsim.materials.dispersion import Constant
 from slabsim.materials.material import Material
-from slabsim.stack.sample import Film, Group, Layer, Patches
-from tests.engine.twins import medium, stack, wires
+from slabsim.stack.directions import tilted
+from slabsim.stack.sample import Film, Grid, Group, Layer, Mesh, Patches, Plates
+from tests.engine.mixed_twins import axes_medium
+from tests.engine.twins import GROUNDED, OPEN, medium, stack, wires
 
 COPPER = Material("copper", Constant(1.0, 0.0, 5.8e7))
 
@@ -63,3 +66,80 @@ def test_rows_number_groups_and_name_sheets():
     assert [row.kind for row in rows] == ["patches", "group", "layer", "film", "layer"]
     assert rows[1].detail == "repeated 3 times:"
     assert rows[0].detail == "period 2 mm, gap 200 um"
+
+
+FLAT_X, FLAT_30 = (1.0, 0.0, 0.0), tilted(90.0, 30.0)
+
+
+def mesh(**more):
+    return Mesh(2e-3, 50e-6, COPPER, (OPEN, GROUNDED), **more)
+
+
+def test_rows_tell_direction_turn_and_ends_of_every_set():
+    (slanted,), (flat,) = wires(2e-3, 5e-5, direction=tilted(20.0, 45.0)), wires(2e-3, 5e-5, direction=FLAT_X)
+    crossed = Layer("", axes_medium((2.0, 3.0, 4.0)), 4e-3, (slanted, flat), rotation=np.deg2rad(30.0))
+    joined = Layer("m", medium(1.0), 8e-3, mesh=mesh())
+    first, second, _ = describe_stack(stack(crossed, joined, Patches("", 2e-3, 2e-4))).rows
+    assert first.kind == "wire layer"
+    assert first.detail == (
+        "tilt 20 deg, azimuth 45 deg, ends open, open; along x; anisotropic, mean eps; turned by 30 deg"
+    )
+    assert first.eps[0] == pytest.approx(4.0**0.5 * 6.0**0.25, rel=1e-14)
+    assert (second.kind, second.detail) == ("mesh layer", "mesh, ends open, grounded")
+
+
+def test_rows_tell_grids_and_the_cut_off_between_plates():
+    # c/(2 b sqrt(eps mu)) with b = 4 mm: 18.737 GHz for eps = 4, 13.249 GHz for mu = 2 as well (waveguide textbook)
+    vent = [Plates("vent", 6e-3, 4e-3, normal, medium(4.0, mu)) for normal, mu in (("y", 1.0), ("x", 2.0))]
+    grids = [Grid("g", 2e-3, 5e-5, metal, n) for metal, n in ((COPPER, FLAT_X), (None, FLAT_30))]
+    rows = describe_stack(stack(*grids, *vent)).rows
+    assert [(row.kind, row.thickness) for row in rows] == [("grid", None)] * 2 + [("plates", 6e-3)] * 2
+    assert [(row.material, row.detail) for row in rows[:2]] == [
+        ("copper", "along x, pitch 2 mm, radius 50 um"),
+        ("perfect conductor", "azimuth 30 deg, pitch 2 mm, radius 50 um"),
+    ]
+    assert rows[2].detail == "normal to y, spacing 4 mm, cut-off 18.737 GHz"
+    assert rows[3].detail == "normal to x, spacing 4 mm, cut-off 13.2491 GHz"
+
+
+def test_notes_tell_where_diffraction_sets_in():
+    # wires along y at 10 mm, plane of incidence xz: first order at f = c/(a (1 + sin theta)) (grating equation)
+    grid = Grid("", 10e-3, 1e-4, None, (0.0, 1.0, 0.0))
+    (note,) = describe_stack(stack(grid, angles_deg=np.array([0.0, 30.0]))).notes
+    assert "sets in at 29.9792 GHz and 19.9862 GHz (0 and 30 deg); beyond it the map holds NaN." in note
+    (note,) = describe_stack(stack(grid)).notes
+    assert "sets in at 29.9792 GHz (0 deg); beyond" in note
+    assert describe_stack(stack(Layer("", medium(2.0), 1e-3, wires()))).notes == ()
+
+
+def test_every_set_and_mesh_has_its_own_numbers():
+    crossed = Layer("c", medium(1.0), 4e-3, wires(2e-3, 5e-5) + wires(4e-3, 5e-5, direction=FLAT_X))
+    given = Layer("m", medium(1.0), 4e-3, mesh=mesh(stiffness=1.7))
+    found = describe_stack(stack(crossed, given, Layer("d", medium(1.0), 4e-3, mesh=mesh()))).wires
+    assert [(one.layer, one.title) for one in found] == [
+        ("c", "Wires 1"),
+        ("c", "Wires 2"),
+        ("m", "Mesh"),
+        ("d", "Mesh"),
+    ]
+    assert [one.direction for one in found[:3]] == ["along z", "along x", "along x, y and z, joined"]
+    assert found[0].fill_fraction == pytest.approx(4 * found[1].fill_fraction) == np.pi * 0.025**2
+    assert found[2].fill_fraction == pytest.approx(3 * found[0].fill_fraction)  # three sets
+    assert [one.tem_loss_db is None for one in found] == [False, True, True, True]
+    assert [one.stiffness is None for one in found] == [True, True, False, False]
+    assert found[2].stiffness == 1.7
+    # l0 = 3/(1 + 2 kp^2/beta^2), 1/(beta a)^2 = (1/2 pi^2) sum [J0(2 pi n r/a)/n]^2: line charges on three sets
+    n = np.arange(1, 3001)
+    beta2 = 2 * np.pi**2 / np.sum((j0(2 * np.pi * n * 0.025) / n) ** 2)
+    kp_a = found[3].plasma[0].kp * 2e-3
+    assert found[3].stiffness == pytest.approx(3 / (1 + 2 * kp_a**2 / beta2), rel=1e-6)
+
+
+def test_a_slanted_set_loses_along_its_own_length():
+    upright, slanted = (
+        describe_stack(
+            stack(Layer("", medium(1.0), 4e-3, wires(2e-3, 5e-5, COPPER, direction=tilted(tilt, 0.0))))
+        ).wires[0]
+        for tilt in (0.0, 60.0)
+    )
+    assert slanted.tem_loss_db[0] == pytest.approx(2 * upright.tem_loss_db[0], rel=1e-12)

@@ -254,3 +254,10 @@ def ports_solver(sample):
     solver = Solver(sample, polarizations=("TE", "TM"))
     solver.is_scalar = False
     return solver
+
+
+def test_the_onset_of_wires_in_the_plane_of_incidence_survives_rounding():
+    # at 8, 12 and 82 deg cos^2 + sin^2 exceeds 1 in the last digit
+    for azimuth in (8.0, 12.0, 82.0):
+        grid = stack(Grid("g", 10e-3, 0.1e-3, None, tilted(90.0, azimuth)))
+        assert_allclose(onset(grid, [30.0], azimuth), C0 / 10e-3 / np.cos(np.pi / 6), rtol=1e-9)

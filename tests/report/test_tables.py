@@ -10,8 +10,8 @@ from slabsim.analyses.comparison import compare_models
 from slabsim.analyses.description import describe_stack
 from slabsim.constants import C0
 from slabsim.report import stack_tables, tables
-from slabsim.stack.sample import Film, Group, Layer
-from tests.engine.twins import medium, stack, wires
+from slabsim.stack.sample import Film, Grid, Group, Layer, Mesh, Plates, WireSet
+from tests.engine.twins import OPEN, medium, stack, wires
 from tests.report.results import band, band_list, track
 
 GHZ = 1e9
@@ -121,6 +121,23 @@ def test_description_shows_groups_sheets_and_both_ends_of_the_sweep():
     assert "eps at 10 GHz" in text
     assert "eps at 20 GHz" in text
     assert row_of(text, "lattice")[-1] == "used"
+
+
+def test_description_shows_every_set_the_mesh_and_what_diffracts():
+    flat = WireSet((2e-3, 3e-3), 5e-5, None, (OPEN, OPEN), direction=(1.0, 0.0, 0.0))
+    mesh = Layer("cubes", medium(1.0), 8e-3, mesh=Mesh(2e-3, 5e-5, None, (OPEN, OPEN), stiffness=1.7))
+    grid = Grid("", 10e-3, 1e-4, None, (0.0, 1.0, 0.0))
+    vent = Plates("vent", 6e-3, 4e-3, "y", medium(1.0))
+    sample = stack(Layer("crossed", medium(1.0), 4e-3, (*wires(2e-3, 5e-5), flat)), mesh, grid, vent)
+    text = text_of(stack_tables.description_tables(describe_stack(sample), "GHz"))
+    assert 'Wires 1 of "crossed"' in text
+    assert 'Wires 2 of "crossed"' in text
+    assert "along x, pitch 2 mm by 3 mm, radius 50 um, perfect conductor" in text
+    assert 'Mesh of "cubes"' in text
+    assert "1.7 (charge on the joined wires over that on one set)" in text
+    assert "azimuth 0 deg, TE and TM" in text
+    assert "cut-off 37.4741 GHz" in text  # c/(2 b), b = 4 mm
+    assert "Diffraction, or a second mode between plates, sets in at 29.9792 GHz (0 deg)" in text
 
 
 def test_pipe_gets_no_trailing_blanks():

@@ -18,6 +18,7 @@ from tests.stack.texts import SWEEP, faults_of
         ('pacthes = { period = "2 mm" }', 'line 1, layer 1: unknown key "pacthes"; did you mean "patches"?'),
         ('antenna = { pitch = "2 mm" }', 'layer 1: unknown key "antenna"; an entry is either a layer'),
         ('material = "vacuum"\nfilm = {}', "layer 1: material and film in one entry; an entry is either a layer"),
+        ('strips = {}\nthickness = "1 mm"', "layer 1: strips and thickness in one entry; an entry is"),
         ("repeat = 2\nstrips = {}", "layer 1: repeat and strips in one entry; an entry is either"),
         (
             'patches = { period = "2 mm", gap = "2 mm" }',

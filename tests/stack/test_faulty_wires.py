@@ -22,7 +22,11 @@ from tests.stack.texts import SLAB, the_fault_of
         ('pitch = "2 mm"', 'pitch = ["2 mm"]', "wires 1: pitch: 1 item; it must have at least 2"),
         ('pitch = "2 mm"', 'pitch = ["2 mm", "3 mm", "4 mm"]', "wires 1: pitch: 3 items; it must have at most 2"),
         ('pitch = "2 mm"', 'pitch = ["2 mm", "3 GHz"]', 'wires 1: pitch 2: "3 GHz": "GHz" is a unit of frequency'),
-        ('pitch = "2 mm"', 'pitch = "2 mm"\naxis = "v"', 'wires 1: axis: "v"; allowed are "x", "y", "z"'),
+        (
+            'pitch = "2 mm"',
+            'pitch = "2 mm"\naxis = "v"',
+            'wires 1: axis: "v"; allowed are "x", "y", "z", or a table { tilt, azimuth }',
+        ),
         (
             'pitch = "2 mm"',
             'pitch = "2 mm"\naxis = "x"',
@@ -45,6 +49,11 @@ from tests.stack.texts import SLAB, the_fault_of
         ),
         (
             'pitch = "2 mm"',
+            'pitch = "2 mm"\naxis = { tilt = "20 deg", azimut = "3 deg" }',
+            'axis.azimut: unknown key; did you mean "azimuth"?',
+        ),
+        (
+            'pitch = "2 mm"',
             'pitch = "2 mm"\ninductance = "hots"',
             'inductance: "hots"; allowed are "vacuum", "host"; did you',
         ),
@@ -52,6 +61,12 @@ from tests.stack.texts import SLAB, the_fault_of
             '["open", "open"]',
             '["open", "opne"]',
             'wires 1: ends 2: "opne"; allowed are "open", "grounded", "joined"; did you mean "open"?',
+        ),
+        (
+            '["open", "open"]',
+            '["open", "cut"]',
+            'ends 2: "cut"; allowed are "open", "grounded", "joined", or a table { resistance, inductance, '
+            "capacitance }",
         ),
         ('["open", "open"]', '["open"]', "wires 1: ends: 1 item; it must have at least 2"),
         ('["open", "open"]', '"open"', 'wires 1: ends: "open"; it must be a list in brackets'),

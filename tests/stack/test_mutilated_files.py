@@ -6,7 +6,7 @@ import pytest
 
 from slabsim.errors import Fault, StackError
 from slabsim.stack.reader import parse_stack
-from tests.stack.texts import POLYMER, WINDOW
+from tests.stack.texts import GEOMETRIES, POLYMER, WINDOW
 
 VALUES = [
     "3",
@@ -58,12 +58,13 @@ def with_lines_exchanged(lines, chance):
 CHANGES = [without_a_line, with_a_line_twice, with_another_value, with_a_letter_changed, with_lines_exchanged]
 
 
+@pytest.mark.parametrize("text", [WINDOW, GEOMETRIES])
 @pytest.mark.parametrize("seed", range(8))
-def test_a_mutilated_file_is_read_or_told(seed):
+def test_a_mutilated_file_is_read_or_told(seed, text):
     chance = random.Random(seed)
     told: list[Fault] = []
     for _ in range(60):
-        lines = WINDOW.splitlines()
+        lines = text.splitlines()
         for _ in range(chance.choice([1, 1, 2, 5])):
             lines = chance.choice(CHANGES)(lines, chance)
         try:

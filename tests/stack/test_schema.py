@@ -6,7 +6,7 @@ import pytest
 
 from slabsim.stack.reader import parse_stack
 from slabsim.stack.schema import stack_schema
-from tests.stack.texts import POLYMER, SLAB, WINDOW
+from tests.stack.texts import GEOMETRIES, POLYMER, SLAB, WINDOW, faults_of
 
 jsonschema = pytest.importorskip("jsonschema")
 
@@ -18,7 +18,7 @@ def validator():
     return jsonschema.Draft202012Validator(schema)
 
 
-@pytest.mark.parametrize("text", [WINDOW, SLAB])
+@pytest.mark.parametrize("text", [WINDOW, SLAB, GEOMETRIES])
 def test_good_files_pass(validator, text):
     assert [error.message for error in validator.iter_errors(tomllib.loads(text))] == []
 
@@ -42,6 +42,33 @@ def test_good_files_pass(validator, text):
 def test_what_one_value_can_tell_is_refused_by_the_schema_too(validator, old, new):
     assert old in SLAB
     assert not validator.is_valid(tomllib.loads(SLAB.replace(old, new)))
+
+
+@pytest.mark.parametrize(
+    ("old", "new"),
+    [
+        ('tilt = "20 deg"', 'tilt = "20 mm"'),
+        ('tilt = "20 deg", azimuth', "azimuth"),
+        ('axis = "y"', 'axis = "w"'),
+        ('inductance = "host"', 'inductance = "air"'),
+        ('rotation = "-30 deg"', "rotation = -30"),
+        ("yy = 3.0, ", ""),
+        ("zz = 1.5", 'zz = "1.5"'),
+        ("stiffness = 2.1", "stiffness = 0"),
+        ("stiffness = 2.1", 'axis = "z"'),
+        ('axis = "x", ', ""),
+        ('axis = "x"', 'axis = "z"'),
+        ('{ azimuth = "30 deg" }', '{ tilt = "30 deg" }'),
+        ('normal = "y"', 'normal = "z"'),
+        ('spacing = "4 mm"', 'spacing = "4 GHz"'),
+        ('thickness = "6 mm"\n', ""),
+    ],
+)
+def test_geometries_that_one_value_rules_out_are_refused_by_both(validator, old, new):
+    assert GEOMETRIES.count(old) == 1
+    text = GEOMETRIES.replace(old, new)
+    assert not validator.is_valid(tomllib.loads(text))
+    faults_of(text)
 
 
 def nodes(schema, path=""):

@@ -116,6 +116,81 @@ spectrum = "10 GHz"
 angle = "30 deg"
 """
 
+GEOMETRIES = """\
+title = "every geometry"
+[material.copper]
+conductivity = "5.8e7 S/m"
+[material.crystal]
+permittivity = { xx = 2.0, yy = 3.0, zz = 4.0 }
+loss_tangent = 0.001
+permeability = { xx = 1, yy = { resonance = "30 GHz", strength = 0.3, damping = "0.1 GHz" }, zz = 1.5 }
+
+[[layer]]
+name = "crossed"
+material = "crystal"
+thickness = "4 mm"
+rotation = "-30 deg"
+[[layer.wires]]
+axis = { tilt = "20 deg", azimuth = "45 deg" }
+pitch = ["2 mm", "3 mm"]
+radius = "50 um"
+metal = "copper"
+ends = ["open", { resistance = "50 ohm" }]
+inductance = "host"
+[[layer.wires]]
+axis = "y"
+pitch = "2 mm"
+radius = "50 um"
+metal = "perfect conductor"
+[[layer.wires]]
+axis = { tilt = "90 deg", azimuth = "0.5 rad" }
+pitch = "2 mm"
+radius = "50 um"
+metal = "copper"
+plasma = "9 GHz"
+
+[[layer]]
+patches = { period = "2 mm", gap = "0.2 mm" }
+
+[[layer]]
+name = "mesh"
+material = "vacuum"
+thickness = "8 mm"
+[layer.mesh]
+pitch = "2 mm"
+radius = "50 um"
+metal = "copper"
+ends = ["grounded", "joined"]
+stiffness = 2.1
+plasma = "gap"
+inductance = "vacuum"
+
+[[layer]]
+material = "vacuum"
+thickness = "3 mm"
+[[layer.wires]]
+pitch = "2 mm"
+radius = "50 um"
+metal = "copper"
+ends = ["joined", "open"]
+
+[[layer]]
+name = "front grid"
+grid = { axis = "x", pitch = "2 mm", radius = "50 um", metal = "copper" }
+[[layer]]
+grid = { axis = { azimuth = "30 deg" }, pitch = "2 mm", radius = "50 um", metal = "perfect conductor" }
+
+[[layer]]
+name = "vent"
+thickness = "6 mm"
+plates = { spacing = "4 mm", normal = "y", filling = "vacuum" }
+
+[sweep]
+spectrum = { from = "5 GHz", to = "20 GHz", points = 16 }
+angle = { from = "0 deg", to = "60 deg", points = 7 }
+azimuth = { values = ["0 deg", "90 deg"] }
+"""
+
 SWEEP = '[sweep]\nspectrum = "10 GHz"\nangle = "30 deg"\n'
 
 
