@@ -25,8 +25,11 @@ from typing import Literal, NamedTuple
 
 import numpy as np
 
+from slabsim.materials.long_sums import order_rule
+
 Field = Literal["along", "across"]
-_TERMS = 16  # pairs of orders and of modes that are multiplied one by one; the rest in closed form to order n^-7
+_REACH = 6.0  # factors are multiplied until p is so many times u (see `_ratio`); the rest in closed form
+_POWERS = 6  # of 1/p^2 in the closed form: (1/_REACH)^14 is left
 
 
 class Edge(NamedTuple):
@@ -62,8 +65,8 @@ def plate_edge(k2: np.ndarray, ky: np.ndarray, spacing: float, field: Field) -> 
     outside = _root(u2 - v**2)
     inside = _root(u2 - 1.0) if field == "along" else _root(u2)
     first = 2 if field == "along" else 1
-    phase_outside = np.exp(-_log_ratio(outside, u2, v, first))
-    return Edge(outside * unit, inside * unit, phase_outside, np.exp(_log_ratio(inside, u2, v, first)))
+    phase_outside = 1.0 / _ratio(outside, u2, v, first)
+    return Edge(outside * unit, inside * unit, phase_outside, _ratio(inside, u2, v, first))
 
 
 def plates_diffract(k2: np.ndarray, ky: np.ndarray, spacing: float, field: Field) -> np.ndarray:
@@ -80,34 +83,39 @@ def _root(z: np.ndarray) -> np.ndarray:
     return np.where(root.imag < 0.0, -root, root)
 
 
-def _log_ratio(w: np.ndarray, u2: np.ndarray, v: np.ndarray, first: int) -> np.ndarray:
-    """ln F(w)/F(-w) in units of pi/b; the modes from m = `first` on.
+def _ratio(w: np.ndarray, u2: np.ndarray, v: np.ndarray, first: int) -> np.ndarray:
+    """F(w)/F(-w) in units of pi/b; the modes from m = `first` on.
 
-    A factor with kz = i q gives (1 - w/kz)/(1 + w/kz) = exp(2 i atan(w/q)), q = sqrt(p^2 - u^2), p = 2n +- v for the
+    A factor with kz = i q gives (q + i w)/(q - i w) = exp(2 i atan(w/q)), q = sqrt(p^2 - u^2), p = 2n +- v for the
     orders and p = m for the modes. The orders n, -n are taken together with the modes 2n - 1, 2n: cut off so, the
     product has the growth that the edge condition asks for.
     """
-    from scipy.special import digamma, zeta
+    nodes, weights = order_rule(8.0 + 0.5 * _REACH * float(np.max(np.sqrt(abs(u2)), initial=0.0)))
+    product = np.ones(np.broadcast_shapes(w.shape, u2.shape, np.shape(v)), dtype=complex)
+    for n, weight in zip(nodes, weights, strict=True):
+        factor = _factor(2.0 * n + v, w, u2) * _factor(2.0 * n - v, w, u2) / _factor(2.0 * n, w, u2)
+        if 2.0 * n - 1.0 >= first:
+            factor = factor / _factor(2.0 * n - 1.0, w, u2)
+        product = product * (factor if weight == 1.0 else factor**weight)
+    return product * np.exp(2j * _tail(round(weights.sum()) + 1, w, u2, 0.5 * v))
 
-    total = np.zeros(np.broadcast_shapes(w.shape, u2.shape, np.shape(v)), dtype=complex)
-    for n in range(1, _TERMS + 1):
-        for p, sign in ((2 * n + v, 1.0), (2 * n - v, 1.0), (2 * n - 1.0, -1.0), (2.0 * n, -1.0)):
-            if sign > 0.0 or p >= first:
-                total = total + sign * np.arctan(w / _root_of_decay(p**2 - u2))
-    # the terms beyond, by powers of 1/p
-    a, half = _TERMS + 1.0, 0.5 * v
-    total = total + 0.5 * w * (digamma(a - 0.5) + digamma(a) - digamma(a + half) - digamma(a - half))
-    powers = {
-        3: 0.5 * w * u2 - w**3 / 3.0,
-        5: 0.375 * w * u2**2 - 0.5 * w**3 * u2 + w**5 / 5.0,
-        7: 0.3125 * w * u2**3 - 0.625 * w**3 * u2**2 + 0.5 * w**5 * u2 - w**7 / 7.0,
-    }
-    for n, coefficient in powers.items():
-        sums = zeta(n, a + half) + zeta(n, a - half) - zeta(n, a - 0.5) - zeta(n, a)
+
+def _factor(p: np.ndarray | float, w: np.ndarray, u2: np.ndarray) -> np.ndarray:
+    q = np.sqrt(p**2 - u2)
+    return (q + 1j * w) / (q - 1j * w)
+
+
+def _tail(beyond: int, w: np.ndarray, u2: np.ndarray, half: np.ndarray) -> np.ndarray:
+    """Sum of atan(w/q) over the orders less that over the modes, n >= `beyond`, by powers of 1/p."""
+    from scipy.special import binom, digamma, zeta
+
+    up, down = beyond + half, beyond - half
+    total = 0.5 * w * (digamma(beyond - 0.5) + digamma(beyond) - digamma(up) - digamma(down))
+    odd = [w]  # the terms of atan w by powers, less the factors 1/(2i + 1)
+    for j in range(1, _POWERS + 1):
+        odd = [one * u2 for one in odd] + [-odd[-1] * w**2]
+        coefficient = sum(one * binom(j - 0.5, j - i) / (2 * i + 1) for i, one in enumerate(odd))
+        n = 2 * j + 1
+        sums = zeta(n, up) + zeta(n, down) - zeta(n, beyond - 0.5) - zeta(n, beyond)
         total = total + coefficient * sums / 2.0**n
-    return 2j * total
-
-
-def _root_of_decay(z: np.ndarray) -> np.ndarray:
-    root = np.sqrt(z)
-    return np.where(root.real < 0.0, -root, root)
+    return total
