@@ -29,7 +29,7 @@ class WireNumbers:
     kappa_p : float array
         kp/k0.
     zeta : complex array
-        Zw area/eta0 [1], Zw the internal impedance per length.
+        Zw area/eta0 [m], Zw the internal impedance per length.
     zc : complex array
         i zeta kp^2/k0.
     inductance, charge : complex arrays
@@ -71,7 +71,7 @@ def wire_numbers(layer: Layer, wires: WireSet | Mesh, frequencies: np.ndarray) -
 
 
 def wire_constants(layer: Layer, wires: WireSet | Mesh, frequencies: np.ndarray) -> tuple[float, np.ndarray]:
-    """Plasma wavenumber kp [rad/m] of a set of wires, and its zeta = Zw area/eta0, shape (n_freqs,)."""
+    """Plasma wavenumber kp [rad/m] of a set of wires, and its zeta = Zw area/eta0 [m], shape (n_freqs,)."""
     kp = plasma_wavenumber(wires.pitch, wires.radius, wires.plasma, layer.material)
     if wires.metal is None:
         return kp, np.zeros(frequencies.shape, dtype=complex)
